@@ -1,0 +1,313 @@
+"""The records that pass between the rooms: design, ticks, ports, delays, margins, outcomes.
+
+Takes nothing; gives frozen records only. Must not know how any of them was found. Times are integer picoseconds,
+`_ticks` are periods of the device clock.
+"""
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from enum import Enum
+from typing import Literal
+
+from rowkeeper.reading.figures import Source, Window
+
+__all__ = [
+    "ArbitrationSum",
+    "BenchOutcome",
+    "ClaimOutcome",
+    "Constraint",
+    "Delays",
+    "Design",
+    "FitOutcome",
+    "Margin",
+    "NetDelay",
+    "Note",
+    "PinRow",
+    "Plan",
+    "PortBit",
+    "Ports",
+    "RefreshBounds",
+    "Status",
+    "Term",
+    "TickTable",
+]
+
+
+class Status(Enum):
+    """What became of one check. NOT_RUN is never counted as passed."""
+
+    PASSED = "passed"
+    FAILED = "failed"
+    NOT_RUN = "not run"
+
+
+@dataclass(frozen=True, slots=True)
+class TickTable:
+    """Every tick of the generated sequencer, in periods of the device clock.
+
+    Tick 0 of an access is the clock edge at which the row strobe falls. The rules are in `logic/sequencer.py`.
+    """
+
+    style: Literal["counted", "straight"]
+    row_setup: int  # refresh row stands this long before a refresh strobe falls
+    mux: int  # row address gives way to column address, after the row strobe fell
+    column: int  # earliest column strobe, after the row strobe fell
+    row_hold: int  # row strobe rises this long after the column strobe fell
+    write_lead: int  # write enable falls this long before the column strobe of a write
+    give_up: int  # neither RD nor WR by then: the access ends as a row-only cycle
+    column_cap: int  # the column strobe ends this long after it fell, whatever the bus does
+    column_rest: int  # column strobe high at least
+    refresh_low: int  # row strobe low in a refresh
+    precharge: int  # row strobe high at least, before it may fall again
+    standby: int  # age at which a refresh of our own is wanted while the bus is quiet
+    forced: int  # age at which a refresh of our own is made whatever the bus does
+    reset_settle: int  # RESET low this long: the bus is quiet
+    pause: int  # after configuration, before the first strobe
+    warm_up_cycles: int  # refresh strobes before the first access
+
+    @property
+    def row_end(self) -> int:
+        """Row strobe rises this many ticks after it fell, in a read on time."""
+        return self.column + self.row_hold
+
+    @property
+    def service(self) -> int:
+        """Most ticks from `forced` being reached to the fall of the refresh strobe, from any state.
+
+        Worst case: a write that starts its column strobe at the last moment, is ended, precharged and followed by
+        the refresh.  See the ranking assertions in `judging/claims`, which prove it.
+        """
+        access = self.row_end + self.write_lead + self.row_hold + 2
+        refresh = self.row_setup + self.refresh_low + 1
+        return max(access, refresh) + max(self.precharge, self.column_rest) + 2 + self.row_setup + 2
+
+
+@dataclass(frozen=True, slots=True)
+class Design:
+    """What the logic is built from: sizes, window, which bus lines are wired, ticks. No picoseconds."""
+
+    name: str
+    row_bits: int
+    column_bits: int
+    refresh_bits: int  # width of the row counter; rows to refresh = 2 ** refresh_bits
+    address_bits: int
+    window_bits: int  # high address bits compared by the window decode
+    window_value: int  # what they must equal
+    has_busreq: bool
+    has_busack: bool
+    has_reset: bool
+    standby: bool
+    ticks: TickTable
+
+
+@dataclass(frozen=True, slots=True)
+class PortBit:
+    """One bit of a logic port and the board net it is: port `ma`, index 3 is net `ma3`. index None: a scalar."""
+
+    port: str
+    index: int | None
+    net: str
+    direction: Literal["input", "output"]
+
+    @property
+    def verilog(self) -> str:
+        return self.port if self.index is None else f"{self.port}[{self.index}]"
+
+
+@dataclass(frozen=True, slots=True)
+class Ports:
+    """Every bit of the top module, in port order."""
+
+    bits: tuple[PortBit, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class NetDelay:
+    """Delay of one net inside the device, without what it passes through on the board.
+
+    Input: pin to the first flip-flop (set-up included). Output: clock at the pin to the signal at the pin.
+    """
+
+    net: str
+    direction: Literal["input", "output"]
+    window: Window
+    source: Source
+
+
+@dataclass(frozen=True, slots=True)
+class Delays:
+    """Device delays per net, and whether they come from the router or from the family's figures."""
+
+    nets: Mapping[str, NetDelay]
+    routed: bool
+
+
+# --- what timing gives -------------------------------------------------------------------------------------------
+
+
+@dataclass(frozen=True, slots=True)
+class Term:
+    """One promise on the path of a margin. `used_ps` is signed, as it is added up."""
+
+    name: str
+    lo_ps: int | None
+    hi_ps: int | None
+    used_ps: int
+    source: Source
+
+
+@dataclass(frozen=True, slots=True)
+class Margin:
+    """One limit in one situation. margin = earliest - required (min) or required - latest (max)."""
+
+    symbol: str
+    cycle: str
+    neighbour: str
+    sense: Literal["min", "max"]
+    kind: Literal["hard", "reference"]
+    required_ps: int
+    earliest_ps: int | None
+    latest_ps: int | None
+    margin_ps: int
+    terms: tuple[Term, ...]
+    source: Source
+    from_memory: bool
+    note: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Note:
+    """Something a person should know that is not a failure: a derating, a missing minimum, a typical value."""
+
+    topic: str
+    text: str
+
+
+@dataclass(frozen=True, slots=True)
+class ArbitrationSum:
+    """The sum that shows a refresh of our own is over before the next access. All terms in picoseconds."""
+
+    event: str
+    notice: str
+    available: tuple[Term, ...]
+    needed: tuple[Term, ...]
+    margin_ps: int
+
+
+@dataclass(frozen=True, slots=True)
+class RefreshBounds:
+    """Gaps between refresh strobes in ticks and the ages that follow, against the chip's interval.
+
+    `drought_ticks`: the longest a legal bus runs without asking for a refresh, counted from its last request or from
+    the last tick at which it was quiet and our sequencer idle.
+    """
+
+    drought_ticks: int
+    legal_gap_ticks: int
+    any_gap_ticks: int
+    rows: int
+    interval_ps: int
+    running_age_ps: int
+    legal_age_ps: int
+    any_age_ps: int
+    terms: tuple[Term, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Plan:
+    """A judged set of ticks: all margins, worst first."""
+
+    ticks: TickTable
+    tick_lo_ps: int
+    tick_hi_ps: int
+    margins: tuple[Margin, ...]
+    arbitration: tuple[ArbitrationSum, ...]
+    refresh: RefreshBounds
+    notes: tuple[Note, ...]
+    routed: bool
+
+    @property
+    def worst_ps(self) -> int:
+        return min(m.margin_ps for m in self.margins if m.kind == "hard")
+
+    @property
+    def holds(self) -> bool:
+        sums = all(a.margin_ps >= 0 for a in self.arbitration)
+        hard = all(m.margin_ps >= 0 for m in self.margins if m.kind == "hard")
+        return sums and hard and self.refresh.any_age_ps <= self.refresh.interval_ps
+
+
+# --- what the judges give ----------------------------------------------------------------------------------------
+
+
+@dataclass(frozen=True, slots=True)
+class ClaimOutcome:
+    """One claim on one subject (`logic` or `netlist`).
+
+    `assertions`: how many assertions the proof held. `certificate`: clauses of the invariant re-checked by the
+    second solver. `covered`, `spoiled_caught`: the guards against a vacuous proof; None where not asked for.
+    """
+
+    claim: str
+    sentence: str
+    subject: Literal["logic", "netlist"]
+    status: Status
+    assertions: int
+    assumptions: tuple[str, ...]
+    certificate: int | None
+    covered: bool | None
+    spoiled_caught: bool | None
+    detail: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class BenchOutcome:
+    """One bench run: `engine` compiled or icarus, `subject` logic or netlist."""
+
+    scenario: str
+    engine: Literal["compiled", "icarus"]
+    subject: Literal["logic", "netlist"]
+    corner: str
+    status: Status
+    checks: int
+    bus_ps: int
+    detail: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Constraint:
+    """One pin assignment of the constraint file."""
+
+    port: PortBit
+    pin: str
+    pull_up: bool
+
+
+@dataclass(frozen=True, slots=True)
+class FitOutcome:
+    """What the router gave: files as bytes, size, speed, delays, plain Verilog of the routed netlist."""
+
+    status: Status
+    constraint_text: str
+    programming: bytes
+    netlist_rtlil: str
+    netlist_verilog: str
+    cells_used: int
+    cells_total: int
+    fmax_mhz: str
+    delays: Delays | None
+    detail: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class PinRow:
+    """One package pin as the sheet shows it."""
+
+    pin: str
+    function: str
+    net: str
+    direction: str
+    level: str
+    meets: str
+    through: str
+    note: str
