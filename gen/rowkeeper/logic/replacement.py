@@ -66,20 +66,23 @@ class Replacement(Component):
         self.warm_up = WarmUp(t.pause, t.warm_up_cycles)
         self.sequencer = Sequencer(t)
 
+        for name, part in self._parts().items():
+            for member in part.signature.members:
+                # One name in the whole design: the part, then its port.
+                getattr(part, member).name = f"{name}_{member}"
+
+    def _parts(self) -> dict[str, Component]:
+        parts: dict[str, Component] = {f"sync_{name.removesuffix('_n')}": line for name, line in self.lines.items()}
+        names = ("cycle_kind", "window_decode", "address_multiplexer", "row_counter", "refresh_timer")
+        return parts | {name: getattr(self, name) for name in (*names, "quiet_bus", "warm_up", "sequencer")}
+
     def elaborate(self, platform: object) -> Module:
         m = Module()
         m.domains.sync = self.clock
         for name, line in self.lines.items():
-            m.submodules[f"sync_{name.removesuffix('_n')}"] = line
             m.d.comb += line.line_n.eq(getattr(self, name))
-        m.submodules.cycle_kind = self.cycle_kind
-        m.submodules.window_decode = self.window_decode
-        m.submodules.address_multiplexer = self.address_multiplexer
-        m.submodules.row_counter = self.row_counter
-        m.submodules.refresh_timer = self.refresh_timer
-        m.submodules.quiet_bus = self.quiet_bus
-        m.submodules.warm_up = self.warm_up
-        m.submodules.sequencer = self.sequencer
+        for name, part in self._parts().items():
+            m.submodules[name] = part
         self._wire_requests(m)
         self._wire_refresh(m)
         self._wire_outputs(m)
