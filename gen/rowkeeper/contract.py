@@ -18,6 +18,8 @@ __all__ = [
     "Constraint",
     "Delays",
     "Design",
+    "Finding",
+    "FindingGroup",
     "FitOutcome",
     "Margin",
     "NetDelay",
@@ -30,6 +32,7 @@ __all__ = [
     "Status",
     "Term",
     "TickTable",
+    "Verdict",
 ]
 
 
@@ -311,3 +314,36 @@ class PinRow:
     meets: str
     through: str
     note: str
+
+
+# --- what it all comes to ----------------------------------------------------------------------------------------
+
+
+FindingGroup = Literal["margin", "arbitration", "refresh", "claim", "bench", "fit"]
+
+
+@dataclass(frozen=True, slots=True)
+class Finding:
+    """One line of a verdict: one check, and what became of it."""
+
+    group: FindingGroup
+    name: str
+    status: Status
+    detail: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Verdict:
+    """Every check of one run, in the order of the work. The rule for `status` is in `judging/verdict.py`."""
+
+    status: Status
+    findings: tuple[Finding, ...]
+
+    @property
+    def exit_code(self) -> int:
+        """0 passed, 1 the design fails a check, 3 something did not run."""
+        return {Status.PASSED: 0, Status.FAILED: 1, Status.NOT_RUN: 3}[self.status]
+
+    def count(self, status: Status) -> int:
+        """How many findings have this status."""
+        return sum(finding.status is status for finding in self.findings)
