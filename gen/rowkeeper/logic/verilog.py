@@ -35,15 +35,23 @@ def verilog_text(design: Design) -> str:
     body = run.files["logic.v"].decode()
     # The first line names the tool's build and its folder.
     body = re.sub(r"\A/\*.*?\*/\s*", "", body, flags=re.DOTALL)
-    return _states(design) + _widen(body)
+    modules = re.split(r"(?<=\nendmodule\n)", body)
+    return _states(design) + "".join(_trim(_widen(module)) for module in modules)
 
 
-def _widen(body: str) -> str:
+def _trim(module: str) -> str:
+    """Declare a wire no wider than it is used: the carry out of an increment goes nowhere."""
+    for high, name in re.findall(r"\n  wire \[(\d+):0\] (_\d+_);", module):
+        used = set(re.findall(rf"\b{name}(?:\[(\d+):0\])?", module.replace(f"wire [{high}:0] {name};", "")))
+        if len(used) == 1 and "" not in used:
+            narrow = used.pop()
+            module = module.replace(f"wire [{high}:0] {name};", f"wire [{narrow}:0] {name};")
+            module = module.replace(f"{name}[{narrow}:0]", name)
+    return module
+
+
+def _widen(module: str) -> str:
     """Give the constant of a comparison the width of what it is compared with: linters warn where they differ."""
-    return "".join(_widen_module(part) for part in re.split(r"(?<=\nendmodule\n)", body))
-
-
-def _widen_module(module: str) -> str:
     widths = {name: int(high) + 1 for high, name in re.findall(r"\n  (?:reg|wire) \[(\d+):0\] (\w+)", module)}
 
     def widened(match: re.Match[str]) -> str:

@@ -7,18 +7,17 @@ __all__ = ["WindowDecode"]
 
 
 class WindowDecode(Component):
-    """Compares the high `window_bits` of the captured address with `window_value`; no bits: all of it is ours."""
+    """Compares the high bits of the captured address with `window_value`; no bits: all of it is ours."""
 
     address: Signal
     hit: Signal
 
-    def __init__(self, address_bits: int, window_bits: int, window_value: int) -> None:
-        super().__init__({"address": In(address_bits), "hit": Out(1)})
-        self._low = address_bits - window_bits
+    def __init__(self, window_bits: int, window_value: int) -> None:
+        super().__init__({"address": In(window_bits), "hit": Out(1)})
         self._value = window_value
         self._any = window_bits == 0
 
     def elaborate(self, platform: object) -> Module:
         m = Module()
-        m.d.comb += self.hit.eq(1 if self._any else self.address[self._low :] == self._value)
+        m.d.comb += self.hit.eq(1 if self._any else self.address == self._value)
         return m
