@@ -11,17 +11,19 @@ __all__ = ["AddressMultiplexer"]
 
 
 class AddressMultiplexer(Component):
-    """Low `row_bits` of the bus address are the row, the next `column_bits` the column."""
+    """Low `row_bits` of the bus address are the row, the next `column_bits` the column, the rest the window."""
 
     bus_address: Signal
     refresh_row: Signal
     follow: Signal
     to_column: Signal
     to_refresh: Signal
-    captured: Signal
+    window: Signal
     memory_address: Signal
 
-    def __init__(self, address_bits: int, row_bits: int, column_bits: int, refresh_bits: int) -> None:
+    def __init__(
+        self, address_bits: int, window_bits: int, row_bits: int, column_bits: int, refresh_bits: int
+    ) -> None:
         super().__init__(
             {
                 "bus_address": In(address_bits),
@@ -29,15 +31,17 @@ class AddressMultiplexer(Component):
                 "follow": In(1),
                 "to_column": In(1),
                 "to_refresh": In(1),
-                "captured": Out(address_bits),
+                "window": Out(window_bits),
                 "memory_address": Out(max(row_bits, column_bits)),
             }
         )
+        self.captured = Signal(address_bits)
         self._row_bits = row_bits
         self._column_bits = column_bits
 
     def elaborate(self, platform: object) -> Module:
         m = Module()
+        m.d.comb += self.window.eq(self.captured[len(self.captured) - len(self.window) :])
         row = self.bus_address[: self._row_bits]
         column = self.captured[self._row_bits : self._row_bits + self._column_bits]
         with m.If(self.to_refresh):

@@ -58,7 +58,7 @@ class Replacement(Component):
         self.cycle_kind = CycleKind()
         self.window_decode = WindowDecode(design.window_bits, design.window_value)
         self.address_multiplexer = AddressMultiplexer(
-            design.address_bits, design.row_bits, design.column_bits, design.refresh_bits
+            design.address_bits, design.window_bits, design.row_bits, design.column_bits, design.refresh_bits
         )
         self.row_counter = RowCounter(design.refresh_bits)
         self.refresh_timer = RefreshTimer(t.standby, t.forced, design.standby)
@@ -106,7 +106,7 @@ class Replacement(Component):
             mux.follow.eq(s.follow),
             mux.to_column.eq(s.to_column),
             mux.to_refresh.eq(s.to_refresh),
-            self.window_decode.address.eq(mux.captured[self.design.address_bits - self.design.window_bits :]),
+            self.window_decode.address.eq(mux.window),
             s.hit.eq(self.window_decode.hit),
         ]
 
