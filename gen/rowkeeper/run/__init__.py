@@ -1,0 +1,1 @@
+"""The whole line on one page: reads, plans, generates, judges, fits, writes."""
