@@ -304,7 +304,7 @@ class FitOutcome:
 
 @dataclass(frozen=True, slots=True)
 class PinRow:
-    """One package pin as the sheet shows it."""
+    """One package pin as the sheet shows it. `direction`: in, out, supply, ground, config or none (leave open)."""
 
     pin: str
     function: str
@@ -324,12 +324,13 @@ FindingGroup = Literal["margin", "arbitration", "refresh", "claim", "bench", "fi
 
 @dataclass(frozen=True, slots=True)
 class Finding:
-    """One line of a verdict: one check, and what became of it."""
+    """One line of a verdict: one check, and what became of it. `margin_ps`: what is to spare, where it is a time."""
 
     group: FindingGroup
     name: str
     status: Status
     detail: str = ""
+    margin_ps: int | None = None
 
 
 @dataclass(frozen=True, slots=True)

@@ -1,8 +1,8 @@
 """The verdict: every check of a run as one list, and the rule that what did not run is not passed.
 
-Takes a plan and the outcomes of claims, bench and fit; gives a `Verdict`. A proof without an assertion, a cover that was
-not reached, a spoiled design that was not caught and a bench without a check all count as not run: they show nothing.
-Must not know how a margin was found or what a claim means.
+Takes a plan and the outcomes of claims, bench and fit; gives a `Verdict`. A proof without an assertion, a cover that
+was not reached, a spoiled design that was not caught and a bench without a check all count as not run: they show
+nothing. Must not know how a margin was found or what a claim means.
 """
 
 from collections.abc import Iterable, Sequence
@@ -69,20 +69,19 @@ def _symbol(margins: Sequence[Margin]) -> Finding:
     mark = "; rests on a figure from memory" if any(margin.from_memory for margin in margins) else ""
     place = f"{worst.cycle}, {worst.neighbour}" if worst.neighbour else worst.cycle
     times = f"{len(margins)} situations" if len(margins) > 1 else "1 situation"
-    detail = f"worst {worst.margin_ps} ps in {place}; {times}{mark}"
-    return Finding("margin", f"{worst.symbol} {worst.sense}", status, detail)
+    detail = f"worst of {times}: {place}{mark}"
+    return Finding("margin", f"{worst.symbol} {worst.sense}", status, detail, worst.margin_ps)
 
 
 def _arbitration(total: ArbitrationSum) -> Finding:
     status = Status.PASSED if total.margin_ps >= 0 else Status.FAILED
-    return Finding("arbitration", total.event, status, f"{total.margin_ps} ps to spare; notice: {total.notice}")
+    return Finding("arbitration", total.event, status, f"notice: {total.notice}", total.margin_ps)
 
 
 def _refresh(bounds: RefreshBounds) -> Finding:
     oldest_ps = max(bounds.running_age_ps, bounds.legal_age_ps, bounds.any_age_ps)
     status = Status.PASSED if oldest_ps <= bounds.interval_ps else Status.FAILED
-    detail = f"oldest row {oldest_ps} ps of {bounds.interval_ps} ps allowed, {bounds.rows} rows"
-    return Finding("refresh", "age of the oldest row", status, detail)
+    return Finding("refresh", "age of the oldest row", status, f"{bounds.rows} rows", bounds.interval_ps - oldest_ps)
 
 
 def claim_name(outcome: ClaimOutcome) -> str:
@@ -132,8 +131,7 @@ def _bench(outcome: BenchOutcome) -> Finding:
         return Finding("bench", bench_name(outcome), outcome.status, outcome.detail)
     if outcome.checks < 1:
         return Finding("bench", bench_name(outcome), Status.NOT_RUN, "the run made no check")
-    detail = f"{outcome.checks} checks in {outcome.bus_ps} ps of bus time"
-    return Finding("bench", bench_name(outcome), Status.PASSED, detail)
+    return Finding("bench", bench_name(outcome), Status.PASSED, f"{outcome.checks} checks")
 
 
 def fit_findings(outcome: FitOutcome) -> tuple[Finding, ...]:

@@ -15,8 +15,8 @@ __all__ = [
     "nanoseconds",
     "percent",
     "signed_nanoseconds",
-    "time_text",
     "time_or_open",
+    "time_text",
     "volts",
     "window",
 ]
@@ -84,10 +84,11 @@ def volts(level_mv: int) -> str:
 
 def frequency(value_hz: Fraction | int) -> str:
     """A frequency in the largest unit that leaves a whole part."""
+    exact_hz = Fraction(value_hz)
     for size_hz, unit in _FREQUENCY_UNITS:
-        if abs(value_hz) >= size_hz:
-            return f"{decimal(Fraction(value_hz) / size_hz)} {unit}"
-    return f"{decimal(Fraction(value_hz))} Hz"
+        if abs(exact_hz) >= size_hz:
+            return f"{decimal(exact_hz / size_hz)} {unit}"
+    return f"{decimal(exact_hz)} Hz"
 
 
 def percent(share: Fraction) -> str:

@@ -1,0 +1,96 @@
+"""Tables of plain text that never need scrolling sideways.
+
+Takes headings and rows of text; gives lines of at most `WIDTH` columns. Cells that do not fit are wrapped, never cut.
+Must not know what the cells mean.
+"""
+
+import unicodedata
+from collections.abc import Iterable, Sequence
+
+from rowkeeper.sheets.plain import one_line
+
+__all__ = ["WIDTH", "paragraph", "shown_width", "table", "wrapped"]
+
+WIDTH = 100
+_GAP = "  "
+_LEAST = 4  # no column gets narrower than this, whatever has to share the line
+
+
+def shown_width(text: str) -> int:
+    """Columns that a terminal gives to the text: two for a wide letter, none for a combining mark."""
+    return sum(_letter_width(letter) for letter in text)
+
+
+def _letter_width(letter: str) -> int:
+    if unicodedata.category(letter) in ("Mn", "Me"):
+        return 0
+    return 2 if unicodedata.east_asian_width(letter) in ("W", "F") else 1
+
+
+def wrapped(text: str, width: int) -> list[str]:
+    """The words of the text in lines of at most `width` columns; a word longer than a line is broken."""
+    lines = [""]
+    for word in one_line(text).split(" "):
+        longer = f"{lines[-1]} {word}" if lines[-1] else word
+        if shown_width(longer) <= width:
+            lines[-1] = longer
+            continue
+        pieces = _pieces(word, width)
+        lines = [*lines, *pieces] if lines[-1] else [*lines[:-1], *pieces]
+    return lines
+
+
+def _pieces(word: str, width: int) -> list[str]:
+    pieces = [""]
+    for letter in word:
+        if shown_width(pieces[-1] + letter) > width:
+            pieces.append("")
+        pieces[-1] += letter
+    return pieces
+
+
+def paragraph(text: str, indent: str = "", hanging: str | None = None) -> list[str]:
+    """The text as lines within `WIDTH`; the first after `indent`, the rest after `hanging`."""
+    rest = indent if hanging is None else hanging
+    lines = wrapped(text, WIDTH - max(shown_width(indent), shown_width(rest)))
+    return [(rest if number else indent) + line for number, line in enumerate(lines)]
+
+
+def table(headings: Sequence[str], rows: Iterable[Sequence[str]], right: Iterable[int] = ()) -> list[str]:
+    """A table with a rule under its headings. Columns in `right` are set to the right, as numbers are.
+
+    Every row has as many cells as there are headings.
+    """
+    grid = [[one_line(cell) for cell in row] for row in (headings, *rows)]
+    widths = _widths(grid)
+    rights = frozenset(right)
+    printed = [_row(cells, widths, rights) for cells in grid]
+    rule = _GAP.join("-" * width for width in widths)
+    return [*printed[0], rule, *(line for lines in printed[1:] for line in lines)]
+
+
+def _widths(grid: Sequence[Sequence[str]]) -> list[int]:
+    """Natural widths; where they do not fit, the widest column gives way, one step at a time."""
+    widths = [max(_LEAST, *(shown_width(row[column]) for row in grid)) for column in range(len(grid[0]))]
+    room = WIDTH - len(_GAP) * (len(widths) - 1)
+    while sum(widths) > room and max(widths) > _LEAST:
+        widths[widths.index(max(widths))] -= 1
+    return widths
+
+
+def _row(cells: Sequence[str], widths: Sequence[int], rights: frozenset[int]) -> list[str]:
+    columns = [wrapped(cell, width) for cell, width in zip(cells, widths, strict=True)]
+    height = max(len(lines) for lines in columns)
+    printed = []
+    for number in range(height):
+        parts = [
+            _set(lines[number] if number < len(lines) else "", width, column in rights)
+            for column, (lines, width) in enumerate(zip(columns, widths, strict=True))
+        ]
+        printed.append(_GAP.join(parts).rstrip())
+    return printed
+
+
+def _set(text: str, width: int, to_the_right: bool) -> str:
+    space = " " * (width - shown_width(text))
+    return space + text if to_the_right else text + space

@@ -1,0 +1,151 @@
+"""What the assembly sheet says, as one record of finished text.
+
+Takes a board, its pin rows, the verdict and the notes of a run; gives `SheetFacts`. Must not know how the page is laid
+out, nor how any of it was found.
+"""
+
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass
+
+from rowkeeper.contract import Finding, Note, PinRow, Status, Verdict
+from rowkeeper.reading.board import Bank, Board
+from rowkeeper.sheets.outcome_tables import verdict_line
+from rowkeeper.sheets.plain import one_line
+from rowkeeper.sheets.quantities import bytes_text, frequency, hexadecimal
+from rowkeeper.sheets.stamp import Stamp, short_digest
+
+__all__ = ["NOT_PROVEN", "SheetFacts", "board_stamp", "sheet_facts"]
+
+# What no margin, proof or simulation of this tool can see.
+NOT_PROVEN = (
+    "Ringing and overshoot on the real wiring.",
+    "The rails: their level, noise and order at power-up.",
+    "Temperature: how warm the chips really get.",
+    "The true marking of a part: relabelled, mixed or half-good chips.",
+    "Metastability beyond two flip-flops.",
+    "Time from power to valid strobes: the device's sheet gives a typical figure only.",
+    "Solder joints, cold joints, bridges, and the board's own tracks.",
+)
+
+
+_OPEN_SHOWN = 8
+
+
+@dataclass(frozen=True, slots=True)
+class SheetFacts:
+    """The text of one sheet. `passed`: the verdict allows fitting. `open_items`: what failed or did not run."""
+
+    board_name: str
+    revision: str
+    slug: str
+    digest: str
+    short_digest: str
+    tool: str
+    summary: tuple[tuple[str, str], ...]
+    passed: bool
+    verdict: str
+    device: str
+    package: str
+    pins: tuple[PinRow, ...]
+    remove: tuple[str, ...]
+    keep: tuple[str, ...]
+    add: tuple[str, ...]
+    handling: tuple[str, ...]
+    order: tuple[str, ...]
+    assumed: tuple[str, ...]
+    not_proven: tuple[str, ...]
+    open_items: tuple[str, ...]
+
+
+def board_stamp(board: Board, version: str) -> Stamp:
+    """The stamp of a board for the headers of text files."""
+    return Stamp(version, board.slug, board.revision, board.digest)
+
+
+def sheet_facts(
+    board: Board, version: str, pins: Sequence[PinRow], verdict: Verdict, notes: Iterable[Note] = ()
+) -> SheetFacts:
+    """Everything the sheet says of one board after one run."""
+    return SheetFacts(
+        board_name=one_line(board.name),
+        revision=one_line(board.revision),
+        slug=one_line(board.slug),
+        digest=board.digest,
+        short_digest=short_digest(board.digest),
+        tool=f"rowkeeper {version}",
+        summary=_summary(board),
+        passed=verdict.status is Status.PASSED,
+        verdict=verdict_line(verdict),
+        device=one_line(board.device.title),
+        package=board.device.package.upper(),
+        pins=tuple(pins),
+        remove=_lines(board.wiring.remove),
+        keep=_lines(board.wiring.keep),
+        add=_lines(board.wiring.add),
+        handling=HANDLING,
+        order=_order(board),
+        assumed=_lines(board.bus.assumptions.values()),
+        not_proven=(*NOT_PROVEN, *(one_line(f"{note.topic}: {note.text}") for note in notes)),
+        open_items=_open_items(verdict.findings),
+    )
+
+
+def _lines(texts: Iterable[str]) -> tuple[str, ...]:
+    return tuple(one_line(text) for text in texts)
+
+
+def _open_items(findings: Iterable[Finding]) -> tuple[str, ...]:
+    """What failed or did not run; a long list is cut with a count, so that the sheet stays two pages."""
+    items = tuple(_open(finding) for finding in findings if finding.status is not Status.PASSED)
+    rest = len(items) - _OPEN_SHOWN
+    return items if rest <= 0 else (*items[:_OPEN_SHOWN], f"and {rest} more in verdict.json")
+
+
+def _open(finding: Finding) -> str:
+    word = "failed" if finding.status is Status.FAILED else "not run"
+    detail = f": {finding.detail}" if finding.detail else ""
+    return one_line(f"{word}: {finding.group} {finding.name}{detail}")
+
+
+def _summary(board: Board) -> tuple[tuple[str, str], ...]:
+    """What the board is, in a few lines for the head of the sheet."""
+    bus = f"{board.bus.title}, {board.grade.name} part at {frequency(board.bus_clock.frequency_hz)}"
+    device = f"{board.device.title}, {board.device.package.upper()}, {frequency(board.device_clock.frequency_hz)} clock"
+    banks = "; ".join(map(_bank, board.banks))
+    return (("Memory", one_line(banks)), ("Bus", one_line(bus)), ("Device", one_line(device)))
+
+
+def _bank(bank: Bank) -> str:
+    chip = bank.chip
+    where = f"{bytes_text(bank.size)} from {hexadecimal(bank.base)}"
+    return f"{bank.chips} × {chip.name}, {where}, {chip.refresh_rows} rows to refresh"
+
+
+HANDLING = (
+    "The law of the place, licensed practice and the rules of the workshop come before anything on this sheet.",
+    "Mains and CRT equipment: switch off, pull the plug, lock it out, discharge and measure before a hand goes in."
+    " Work on live mains or on a CRT is for licensed people only. No wrist strap near mains, a CRT or high voltage.",
+    "Away from those: handle the device and the memory chips under ESD control (ANSI/ESD S20.20).",
+    "All supplies off, and measured off, whenever a part is fitted, pulled or soldered.",
+    "Never 5 V into a 3.3 V pin: every line from the board passes its translator first.",
+)
+
+
+def _order(board: Board) -> tuple[str, ...]:
+    """The order of work up to the first switch-on, by the supplies of the chips."""
+    supplies = tuple(dict.fromkeys(name for bank in board.banks for name in bank.chip.supplies))
+    negative = [one_line(name) for name in supplies if name.lstrip().startswith(("-", "\u2212"))]
+    listed = ", ".join(map(one_line, supplies))
+    rails = f"Memory chips out. Switch on and measure each supply at the sockets ({listed}), then at the device."
+    steps = [
+        "Programme the flash; compare its checksum with the manifest.",
+        "Remove, keep and add parts as listed. Check each wire against the pin table, one tick per wire.",
+        "With supplies off, measure that no supply is shorted to ground or to another supply.",
+        rails,
+        "Still without chips: measure that /RAS, /CAS and /WE stand high while the device is being configured.",
+        "Supplies off. Fit the memory chips, notch to pin 1 mark.",
+    ]
+    if len(supplies) > 1 and negative:
+        steps.insert(3, f"Three-supply chips: {', '.join(negative)} comes on FIRST and goes off LAST, every time.")
+    steps.append("Switch on. Test in the machine at full speed, with a pause longer than the refresh interval.")
+    return tuple(steps)
