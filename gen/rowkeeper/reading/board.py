@@ -9,7 +9,7 @@ from dataclasses import dataclass
 from fractions import Fraction
 from typing import Literal
 
-from rowkeeper.reading.figures import Figure, Source
+from rowkeeper.reading.figures import Figure, Mark, Source
 from rowkeeper.reading.position import NOWHERE, Position
 
 __all__ = [
@@ -143,6 +143,7 @@ class BusFamily:
     output_levels: IoLevels
     input_levels: IoLevels
     source: Source
+    supply_max_mv: int = 5250
 
 
 @dataclass(frozen=True, slots=True)
@@ -182,13 +183,15 @@ class Device:
     volatile: bool
     supplies: tuple[str, ...]
     notes: tuple[str, ...] = ()
+    pins_source: Source = Source(Mark.MEMORY)
 
 
 @dataclass(frozen=True, slots=True)
 class Part:
     """A buffer, translator or gate that a net passes through; `delay`, `enable`, `disable` in picoseconds.
 
-    `skew_ps`: the most that two outputs of one package differ, where the sheet says so.
+    `skew`: the most that two outputs of one package differ, where the sheet says so. The delay holds up to
+    `load_rated_pf`; each picofarad beyond may cost `load_slope_ps` more (None: the sheet does not tell).
     """
 
     name: str
@@ -204,6 +207,9 @@ class Part:
     output_levels: IoLevels
     input_pf_max: int
     notes: tuple[str, ...] = ()
+    load_rated_pf: int = 50
+    load_slope_ps: int | None = None
+    load_source: Source = Source(Mark.MEMORY)
 
 
 # --- board file --------------------------------------------------------------------------------------------------
@@ -303,7 +309,11 @@ class Wiring:
 
 @dataclass(frozen=True, slots=True)
 class Board:
-    """One board file, typed. `digest`: SHA-256 of the file's bytes together with every catalogue text it used."""
+    """One board file, typed. `digest`: SHA-256 of the file's bytes together with every catalogue text it used.
+
+    `file` is the base name only. `overrides`: catalogue entries taken from files beside the board. `places` maps the
+    dotted name of every value (`bus.clock.frequency`, `wiring.3.pin`) to where it stands, under the path as given.
+    """
 
     file: str
     slug: str
@@ -322,3 +332,4 @@ class Board:
     wiring: Wiring
     digest: str
     places: Mapping[str, Position]
+    overrides: tuple[str, ...] = ()
