@@ -33,6 +33,9 @@ __all__ = [
 ]
 
 
+_UNSOURCED = Source(Mark.MEMORY)
+
+
 # --- catalogue ---------------------------------------------------------------------------------------------------
 
 
@@ -183,7 +186,7 @@ class Device:
     volatile: bool
     supplies: tuple[str, ...]
     notes: tuple[str, ...] = ()
-    pins_source: Source = Source(Mark.MEMORY)
+    pins_source: Source = _UNSOURCED
 
 
 @dataclass(frozen=True, slots=True)
@@ -209,7 +212,7 @@ class Part:
     notes: tuple[str, ...] = ()
     load_rated_pf: int = 50
     load_slope_ps: int | None = None
-    load_source: Source = Source(Mark.MEMORY)
+    load_source: Source = _UNSOURCED
 
 
 # --- board file --------------------------------------------------------------------------------------------------
@@ -251,6 +254,7 @@ class Bank:
     base: int
     size: int
     at: Position = NOWHERE
+    sockets: str = ""  # designators on the board, `U10-U17`
 
 
 @dataclass(frozen=True, slots=True)
@@ -278,6 +282,7 @@ class PathElement:
     series_milliohm: int = 0
     load_ff: int = 0
     at: Position = NOWHERE
+    rail_mv: int = 0  # direct: the supply that both ends share
 
 
 @dataclass(frozen=True, slots=True)

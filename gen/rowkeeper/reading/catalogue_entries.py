@@ -12,7 +12,7 @@ from rowkeeper.reading.figures import Figure, Mark, Source
 from rowkeeper.reading.problems import Problems
 from rowkeeper.reading.section import Section, one_of, read_listing, read_scalars
 from rowkeeper.reading.tree import Block, Node, Scalar
-from rowkeeper.reading.units import capacitance_ff, count, time_ps, voltage_mv, yes_or_no
+from rowkeeper.reading.units import capacitance_ff, count, plain_text, time_ps, voltage_mv, yes_or_no
 
 __all__ = ["Entry", "read_bus", "read_chips", "read_device", "read_parts"]
 
@@ -20,10 +20,6 @@ Entry: TypeAlias = Chip | BusFamily | Device | Part
 
 _ROLES = ("io", "clock", "supply", "ground", "config", "none")
 _PIN_ROLE: TypeAlias = Literal["io", "clock", "supply", "ground", "config", "none"]
-
-
-def _text(scalar: Scalar, problems: Problems) -> str:
-    return scalar.text
 
 
 def _picofarads(scalar: Scalar, problems: Problems) -> int:
@@ -81,7 +77,7 @@ def read_chips(root: Node, problems: Problems) -> tuple[Chip, ...]:
     chips = tuple(
         Chip(
             name=name,
-            title=file.take("title", _text, ""),
+            title=file.take("title", plain_text, ""),
             words=_number(shape, "words"),
             width=_number(shape, "width"),
             row_bits=_number(shape, "row_bits"),
@@ -141,8 +137,8 @@ def read_bus(root: Node, problems: Problems) -> tuple[BusFamily, ...]:
     supply = _sub(file, "supply", ("max",))
     levels = _sub(file, "levels", ("outputs", "inputs"))
     family = BusFamily(
-        name=file.take("name", _text, ""),
-        title=file.take("title", _text, ""),
+        name=file.take("name", plain_text, ""),
+        title=file.take("title", plain_text, ""),
         data_width=_number(file, "data_width"),
         address_bits=_number(file, "address_bits"),
         bus_refresh_row_bits=_number(file, "refresh_row_bits"),
@@ -171,10 +167,10 @@ def _pin(node: Node, problems: Problems) -> DevicePin:
     word = section.scalar("role")
     role = "none" if word is None else one_of(word, _ROLES, "pin role", problems) or "none"
     return DevicePin(
-        number=section.take("pin", _text, ""),
-        name=section.take("name", _text, ""),
+        number=section.take("pin", plain_text, ""),
+        name=section.take("name", plain_text, ""),
         role=cast(_PIN_ROLE, role),
-        bank=section.take("bank", _text, ""),
+        bank=section.take("bank", plain_text, ""),
     )
 
 
@@ -221,11 +217,11 @@ def read_device(root: Node, problems: Problems) -> tuple[Device, ...]:
     if not file.whole:
         return ()
     device = Device(
-        name=file.take("name", _text, ""),
-        title=file.take("title", _text, ""),
+        name=file.take("name", plain_text, ""),
+        title=file.take("title", plain_text, ""),
         family="ice40",
         router_arguments=_texts(router, "arguments"),
-        package=package.take("name", _text, ""),
+        package=package.take("name", plain_text, ""),
         package_pins=_number(package, "pins"),
         cells=_number(router, "cells"),
         pins=pins,
@@ -262,8 +258,8 @@ def read_parts(root: Node, problems: Problems) -> tuple[Part, ...]:
     supply.take("max", voltage_mv, 0)
     read_source(inputs.node("source"), sources, problems)
     part = Part(
-        name=file.take("name", _text, ""),
-        title=file.take("title", _text, ""),
+        name=file.take("name", plain_text, ""),
+        title=file.take("title", plain_text, ""),
         kind="translator" if role == "translator" else "buffer",
         channels=_number(file, "channels"),
         supply_mv=supply.take("nominal", voltage_mv, 0),

@@ -14,7 +14,7 @@ from rowkeeper.reading.figures import Figure, Mark, Source
 from rowkeeper.reading.problems import Problems, quoted
 from rowkeeper.reading.section import Section, one_of, read_scalars
 from rowkeeper.reading.tree import Block, Listing, Node, Scalar
-from rowkeeper.reading.units import signed_time_ps, voltage_mv
+from rowkeeper.reading.units import plain_text, signed_time_ps, voltage_mv
 
 __all__ = ["CLOCK_TERMS", "Columns", "read_figures", "read_formulas", "read_levels", "read_source", "read_sources"]
 
@@ -38,10 +38,6 @@ class Columns:
     sources: Mapping[str, Source]
 
 
-def _text(scalar: Scalar, problems: Problems) -> str:
-    return scalar.text
-
-
 def read_source(node: Node | None, sources: Mapping[str, Source], problems: Problems) -> Source:
     """A source written out (`{mark, document, page}`), or the name of one of the file's sources."""
     if node is None:
@@ -54,7 +50,7 @@ def read_source(node: Node | None, sources: Mapping[str, Source], problems: Prob
     mark = None if word is None else one_of(word, MARKS, "mark", problems)
     if mark is None:
         return _UNKNOWN
-    source = Source(MARKS[mark], section.take("document", _text, ""), section.take("page", _text, ""))
+    source = Source(MARKS[mark], section.take("document", plain_text, ""), section.take("page", plain_text, ""))
     if source.mark is not Mark.MEMORY and not source.document:
         problems.add(node.at, "this source names no document", "add `document:`, or write `mark: memory`")
     return source
@@ -113,7 +109,7 @@ def read_figures(node: Node | None, columns: Columns, problems: Problems) -> lis
         lows = _per_column(row.node("min"), columns, f"{key.text} min", problems)
         highs = _per_column(row.node("max"), columns, f"{key.text} max", problems)
         sources = _row_sources(row.node("source"), columns, problems)
-        note = row.take("note", _text, "")
+        note = row.take("note", plain_text, "")
         if not row.has("min") and not row.has("max"):
             problems.add(value.at, f"{key.text} has neither min nor max", "a typical value is not a limit: give one")
         for table, low, high, source in zip(tables, lows, highs, sources, strict=True):
@@ -164,7 +160,7 @@ def read_formulas(node: Node | None, columns: Columns, problems: Problems) -> li
         row = Section(value, key.text, problems, ("sum",), ("source", "note"))
         sums = _per_column(row.node("sum"), columns, f"{key.text} sum", problems)
         sources = _row_sources(row.node("source"), columns, problems)
-        note = row.take("note", _text, "")
+        note = row.take("note", plain_text, "")
         for table, cell, source in zip(tables, sums, sources, strict=True):
             if cell is not None:
                 table[key.text] = _formula(key.text, cell, source, note, problems)

@@ -5,6 +5,7 @@ values of the wrong shape. Must not know which file it reads.
 """
 
 from collections.abc import Callable, Iterable
+from fractions import Fraction
 from typing import Generic, TypeVar
 
 from rowkeeper.reading.position import Position
@@ -14,6 +15,7 @@ from rowkeeper.reading.tree import Block, Listing, Node, Scalar
 __all__ = ["Section", "Span", "one_of", "read_listing", "read_scalars", "read_span"]
 
 T = TypeVar("T")
+Q = TypeVar("Q", int, Fraction)
 
 
 class Section:
@@ -89,12 +91,12 @@ class Section:
         return () if node is None else read_listing(node, f"`{key}`", self.problems)
 
 
-class Span(Generic[T]):
+class Span(Generic[Q]):
     """A minimum and a maximum, each possibly missing."""
 
-    def __init__(self, low: T | None, high: T | None) -> None:
-        self.low = low
-        self.high = high
+    def __init__(self, low: Q | None, high: Q | None) -> None:
+        self.low: Q | None = low
+        self.high: Q | None = high
 
 
 def read_listing(node: Node, what: str, problems: Problems) -> tuple[Node, ...]:
@@ -120,9 +122,9 @@ def read_span(
     node: Node | None,
     what: str,
     problems: Problems,
-    convert: Callable[[Scalar, Problems], T],
+    convert: Callable[[Scalar, Problems], Q],
     required: tuple[str, ...] = ("min", "max"),
-) -> Span[T]:
+) -> Span[Q]:
     """`{min: ..., max: ...}` with the minimum not above the maximum; keys not in `required` are refused."""
     if node is None:
         return Span(None, None)
@@ -133,11 +135,10 @@ def read_span(
         None if low is None else convert(low, problems),
         None if high is None else convert(high, problems),
     )
-    if section.whole and low is not None and high is not None and span.low is not None and span.high is not None:
-        if span.low > span.high:  # type: ignore[operator]
-            problems.add(
-                low.at, f"{what}: min {low.text} is over max {high.text}", f"write `min: {high.text}, max: {low.text}`"
-            )
+    if section.whole and low and high and span.low is not None and span.high is not None and span.low > span.high:
+        problems.add(
+            low.at, f"{what}: min {low.text} is over max {high.text}", f"write `min: {high.text}, max: {low.text}`"
+        )
     return span
 
 

@@ -50,7 +50,7 @@ class Block:
 Node: TypeAlias = Scalar | Listing | Block
 
 
-class _TooMuch(Exception):
+class _TooMuchError(Exception):
     """The file is beyond what a description can need; reading stops."""
 
 
@@ -66,7 +66,8 @@ class _Builder:
 
     def _at(self, event: yaml.Event) -> Position:
         start, end = event.start_mark, event.end_mark
-        assert start is not None and end is not None  # the pure Python parser always sets both
+        assert start is not None  # the pure Python parser always sets both
+        assert end is not None
         raw = self._text[start.index : end.index].split("\n", 1)[0][:_RAW_WIDTH]
         return Position(self._file, start.line + 1, start.column + 1, raw)
 
@@ -95,10 +96,10 @@ class _Builder:
         at = self._at(event)
         if depth > _DEEPEST:
             self._problems.add(at, f"nested deeper than {_DEEPEST} levels", "no description needs that: flatten it")
-            raise _TooMuch
+            raise _TooMuchError
         if self._count > _MOST_NODES:
             self._problems.add(at, f"more than {_MOST_NODES} values", "no description needs that many: shorten it")
-            raise _TooMuch
+            raise _TooMuchError
         self._refuse_references(event, at)
         if isinstance(event, yaml.ScalarEvent):
             return self._scalar(event, at)
@@ -190,7 +191,7 @@ def read_tree(text: str, file: str, problems: Problems) -> Node | None:
     except yaml.YAMLError as error:
         _note_syntax(error, file, problems)
         return None
-    except _TooMuch:
+    except _TooMuchError:
         return None
     if root is None:
         problems.add(Position(file, 1, 1), "this file is empty", "write a description into it, or name the right file")

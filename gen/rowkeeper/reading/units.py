@@ -30,6 +30,7 @@ __all__ = [
     "exact",
     "frequency_hz",
     "parts_per_million",
+    "plain_text",
     "resistance_milliohm",
     "share",
     "signed_time_ps",
@@ -212,3 +213,8 @@ def yes_or_no(scalar: Scalar, problems: Problems) -> bool:
     if scalar.text not in ("yes", "no"):
         problems.add(scalar.at, f"{quoted(scalar.text)} is neither yes nor no", "write `yes` or `no`")
     return scalar.text == "yes"
+
+
+def plain_text(scalar: Scalar, problems: Problems) -> str:  # noqa: ARG001 - the shape of every converter
+    """The text itself, of a catalogue file, whose texts are ours or the owner's own."""
+    return scalar.text
