@@ -84,7 +84,9 @@ TCAC = Margin(
     note="the sheet rates it with two TTL loads",
 )
 TRCD = Margin("tRCD", "opcode fetch", "", "max", "reference", 50_000, 58_000, 62_000, -12_000, (), CHIP, False)
-TRP = Margin("tRP", "memory write", "before opcode fetch", "min", "hard", 100_000, 98_000, None, -2_000, (), CHIP, False)
+TRP = Margin(
+    "tRP", "memory write", "before opcode fetch", "min", "hard", 100_000, 98_000, None, -2_000, (), CHIP, False
+)
 MARGINS = (TASC, TCAC, TRCD)
 
 ARBITRATION = ArbitrationSum(
@@ -126,7 +128,9 @@ CLAIM = ClaimOutcome(
     spoiled_caught=True,
 )
 BENCH = BenchOutcome("march", "compiled", "logic", "all max", Status.PASSED, 131_072, 90_000_000_000)
-FIT = FitOutcome(Status.PASSED, "set_io clk 15\n", b"\x7e\xaa\x99\x7e", "", "module top; endmodule\n", 231, 1280, "171", None)
+FIT = FitOutcome(
+    Status.PASSED, "set_io clk 15\n", b"\x7e\xaa\x99\x7e", "", "module top; endmodule\n", 231, 1280, "171", None
+)
 
 PASSED = Verdict(
     Status.PASSED,

@@ -13,7 +13,8 @@ __all__ = ["WIDTH", "paragraph", "shown_width", "table", "wrapped"]
 
 WIDTH = 100
 _GAP = "  "
-_LEAST = 4  # no column gets narrower than this, whatever has to share the line
+_LEAST = 4  # no column is made narrower than this, whatever has to share the line
+_BLANK = "\N{NO-BREAK SPACE}"  # a blank that wrapping leaves alone
 
 
 def shown_width(text: str) -> int:
@@ -30,7 +31,7 @@ def _letter_width(letter: str) -> int:
 def wrapped(text: str, width: int) -> list[str]:
     """The words of the text in lines of at most `width` columns; a word longer than a line is broken."""
     lines = [""]
-    for word in one_line(text).split(" "):
+    for word in text.split(" "):
         longer = f"{lines[-1]} {word}" if lines[-1] else word
         if shown_width(longer) <= width:
             lines[-1] = longer
@@ -52,26 +53,41 @@ def _pieces(word: str, width: int) -> list[str]:
 def paragraph(text: str, indent: str = "", hanging: str | None = None) -> list[str]:
     """The text as lines within `WIDTH`; the first after `indent`, the rest after `hanging`."""
     rest = indent if hanging is None else hanging
-    lines = wrapped(text, WIDTH - max(shown_width(indent), shown_width(rest)))
+    lines = wrapped(one_line(text), WIDTH - max(shown_width(indent), shown_width(rest)))
     return [(rest if number else indent) + line for number, line in enumerate(lines)]
 
 
 def table(headings: Sequence[str], rows: Iterable[Sequence[str]], right: Iterable[int] = ()) -> list[str]:
-    """A table with a rule under its headings. Columns in `right` are set to the right, as numbers are.
+    """A table with a rule under its headings. In the columns `right` numbers stand point under point.
 
     Every row has as many cells as there are headings.
     """
-    grid = [[one_line(cell) for cell in row] for row in (headings, *rows)]
-    widths = _widths(grid)
-    rights = frozenset(right)
-    printed = [_row(cells, widths, rights) for cells in grid]
+    grid = [[one_line(cell) for cell in row] for row in rows]
+    tails = {column: _tails([row[column] for row in grid]) for column in frozenset(right)}
+    filled = [[_filled(cell, tails.get(column)) for column, cell in enumerate(row)] for row in grid]
+    heads = [one_line(heading) for heading in headings]
+    widths = _widths([heads, *filled])
+    printed = [_row(cells, widths, frozenset(tails)) for cells in (heads, *filled)]
     rule = _GAP.join("-" * width for width in widths)
     return [*printed[0], rule, *(line for lines in printed[1:] for line in lines)]
 
 
+def _tails(cells: Iterable[str]) -> int:
+    """The most columns that any cell takes from its decimal point on."""
+    return max((len(cell) - cell.index(".") for cell in cells if "." in cell), default=0)
+
+
+def _filled(cell: str, tail: int | None) -> str:
+    """The cell with blanks behind it that bring its decimal point, or its end, to the place of the others."""
+    if tail is None or not cell:
+        return cell
+    own = len(cell) - cell.index(".") if "." in cell else 0
+    return cell + _BLANK * (tail - own)
+
+
 def _widths(grid: Sequence[Sequence[str]]) -> list[int]:
     """Natural widths; where they do not fit, the widest column gives way, one step at a time."""
-    widths = [max(_LEAST, *(shown_width(row[column]) for row in grid)) for column in range(len(grid[0]))]
+    widths = [max(1, *(shown_width(row[column]) for row in grid)) for column in range(len(grid[0]))]
     room = WIDTH - len(_GAP) * (len(widths) - 1)
     while sum(widths) > room and max(widths) > _LEAST:
         widths[widths.index(max(widths))] -= 1
@@ -87,7 +103,7 @@ def _row(cells: Sequence[str], widths: Sequence[int], rights: frozenset[int]) ->
             _set(lines[number] if number < len(lines) else "", width, column in rights)
             for column, (lines, width) in enumerate(zip(columns, widths, strict=True))
         ]
-        printed.append(_GAP.join(parts).rstrip())
+        printed.append(_GAP.join(parts).replace(_BLANK, " ").rstrip())
     return printed
 
 

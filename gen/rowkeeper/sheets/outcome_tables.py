@@ -33,9 +33,7 @@ def claims_text(outcomes: Sequence[ClaimOutcome]) -> str:
     """Every claim with its status and its sentence, then the guards against a proof that shows nothing."""
     if not outcomes:
         return "NOT RUN: no claim was put to the prover.\n"
-    rows = [
-        (status_word(o.status), o.subject, o.claim, str(o.assertions), _guards(o), _sentence(o)) for o in outcomes
-    ]
+    rows = [(status_word(o.status), o.subject, o.claim, str(o.assertions), _guards(o), _sentence(o)) for o in outcomes]
     assumed = list(dict.fromkeys(name for outcome in outcomes for name in outcome.assumptions))
     lines = table(("status", "subject", "claim", "asserts", "guards", "what is claimed"), rows, right=(3,))
     return lines_text(lines, paragraph("Assumed of the bus: " + (", ".join(assumed) or "nothing"), hanging="    "))
@@ -88,6 +86,9 @@ def _block(group: str, findings: Sequence[Finding]) -> list[str]:
     chosen = [finding for finding in findings if finding.group == group]
     if not chosen:
         return [f"{_TITLES[group]}: no check of this kind in this run"]
+    if all(finding.margin_ps is None for finding in chosen):
+        plain = [(status_word(f.status), f.name, f.detail) for f in chosen]
+        return [_TITLES[group], *table(("status", "check", "detail"), plain)]
     rows = [(status_word(f.status), f.name, _spare(f), f.detail) for f in chosen]
     return [_TITLES[group], *table(("status", "check", "to spare, ns", "detail"), rows, right=(2,))]
 

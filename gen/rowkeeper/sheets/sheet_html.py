@@ -47,12 +47,16 @@ class FixedPins:
 def sheet_html(facts: SheetFacts) -> str:
     """The whole sheet."""
     rows = facts.pins
-    page = _environment().get_template("sheet.html.j2").render(
-        facts=facts,
-        view=package_view(rows),
-        wired=[_wired(row) for row in rows if kind_of(row) in ("in", "out")],
-        fixed=_fixed(row for row in rows if kind_of(row) == "fixed"),
-        open_pins=_spans([one_line(row.pin) for row in rows if kind_of(row) == "open"]),
+    page = (
+        _environment()
+        .get_template("sheet.html.j2")
+        .render(
+            facts=facts,
+            view=package_view(rows),
+            wired=[_wired(row) for row in rows if kind_of(row) in ("in", "out")],
+            fixed=_fixed(row for row in rows if kind_of(row) == "fixed"),
+            open_pins=_spans([one_line(row.pin) for row in rows if kind_of(row) == "open"]),
+        )
     )
     return _BEFORE_UNIT.sub(_FIXED_SPACE, page)
 

@@ -23,7 +23,7 @@ __all__ = [
 ]
 
 MEMORY_MARK = "*"
-_HEADINGS = ("margin", "limit", "required", "window", "cycle", "neighbour", "source")
+_HEADINGS = ("margin", "limit", "required", "earliest", "latest", "cycle", "neighbour", "source")
 
 
 def lines_text(*blocks: Iterable[str]) -> str:
@@ -52,12 +52,13 @@ def margin_text(margins: Sequence[Margin], every: bool = False) -> str:
         return "NOT RUN: no margin was computed.\n"
     sources = _Sources()
     rows = [_margin_row(margin, sources) for margin in chosen]
-    key = ["All times in ns. margin = earliest - required (min), or required - latest (max); below zero it fails."]
+    key = ["Times in ns. margin = earliest - required (min) or required - latest (max); below zero it fails."]
     if any(margin.from_memory for margin in chosen):
         key += [f"{MEMORY_MARK} rests on a figure from memory, confirmed in no document at hand."]
     if any(margin.kind == "reference" for margin in chosen):
         key += ["(ref) a reference point of the sheet, not a limit: shown, never judged."]
-    return lines_text(table(_HEADINGS, rows, right=(0, 2, 3)), key, sources.lines())
+    keys = [line for text in key for line in paragraph(text, hanging="  ")]
+    return lines_text(table(_HEADINGS, rows, right=(0, 2, 3, 4)), keys, sources.lines())
 
 
 def _margin_row(margin: Margin, sources: "_Sources") -> tuple[str, ...]:
@@ -68,7 +69,8 @@ def _margin_row(margin: Margin, sources: "_Sources") -> tuple[str, ...]:
         signed_nanoseconds(margin.margin_ps),
         f"{margin.symbol} {margin.sense}{mark}{kind}{fails}",
         nanoseconds(margin.required_ps),
-        window(margin.earliest_ps, margin.latest_ps),
+        _end(margin.earliest_ps),
+        _end(margin.latest_ps),
         margin.cycle,
         margin.neighbour,
         sources.number(margin.source),
@@ -102,7 +104,7 @@ def explain_text(margins: Sequence[Margin], symbol: str) -> str:
 
     An unknown symbol gets the list of the known ones.
     """
-    chosen = worst_first(margin for margin in margins if margin.symbol == symbol)
+    chosen = worst_first(margin for margin in margins if margin.symbol.casefold() == symbol.casefold())
     if not chosen:
         known = ", ".join(dict.fromkeys(margin.symbol for margin in margins)) or "none"
         return lines_text(paragraph(f"No limit is called {symbol}. Known here: {known}."))

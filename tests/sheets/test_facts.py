@@ -1,0 +1,89 @@
+"""What the sheet says of a board: supplies decide the order of work, the verdict decides whether to fit."""
+
+from dataclasses import replace
+
+from rowkeeper.contract import Finding, Status, Verdict
+from rowkeeper.reading.board import Board
+from rowkeeper.sheets.facts import NOT_PROVEN, SheetFacts, board_stamp, sheet_facts
+from rowkeeper.sheets.stamp import Stamp
+from sheets.boards import BOARD, CHIP
+from sheets.records import DIGEST, MIXED, NOTES, PASSED, pin_rows
+
+
+def _facts(board: Board = BOARD, verdict: Verdict = PASSED) -> SheetFacts:
+    return sheet_facts(board, "0.1.0", pin_rows(), verdict, NOTES)
+
+
+def test_head() -> None:
+    """What the board is, from the board file and the catalogue."""
+    assert _facts().summary == (
+        ("Memory", "8 × 4116-15, 16 KiB from 0xC000, 128 rows to refresh"),
+        ("Bus", "8-bit bus with M1, MREQ and RFSH (UM0080), 4 MHz part at 4 MHz"),
+        ("Device", "iCE40 HX1K, VQ100, 100 MHz clock"),
+    )
+
+
+def test_stamp_of_a_board() -> None:
+    """Slug, not name: a slug cannot hold anything strange."""
+    assert board_stamp(BOARD, "0.1.0") == Stamp("0.1.0", "loom-16k", "B", DIGEST)
+
+
+def test_parts_are_one_line_each() -> None:
+    """Remove, keep and add, as the board file has them."""
+    facts = _facts()
+    assert (facts.remove, facts.keep, facts.add) == (("U1, U2", "U3"), ("U19",), ("U31 (AHCT541)",))
+
+
+def test_three_supply_chips_want_the_negative_one_first() -> None:
+    """Common practice with three-supply parts: the substrate bias is first on and last off."""
+    order = _facts().order
+    (step,) = [step for step in order if "FIRST" in step]
+    assert step == "Three-supply chips: -5 V comes on FIRST and goes off LAST, every time."
+    assert order.index(step) < min(place for place, text in enumerate(order) if "Switch on" in text)
+
+
+def test_single_supply_chips_have_no_such_step() -> None:
+    """A rule that does not apply is not printed."""
+    chip = replace(CHIP, supplies=("+5 V",))
+    board = replace(BOARD, banks=(replace(BOARD.banks[0], chip=chip),))
+    assert [step for step in _facts(board).order if "FIRST" in step] == []
+
+
+def test_chips_are_out_for_the_first_power_up() -> None:
+    """They are fitted after the rails were measured, with supplies off."""
+    order = _facts().order
+    measured = next(place for place, text in enumerate(order) if text.startswith("Memory chips out."))
+    fitted = next(place for place, text in enumerate(order) if "Fit the memory chips" in text)
+    assert measured < fitted
+    assert order[fitted].startswith("Supplies off.")
+
+
+def test_assumptions_of_the_bus_are_listed() -> None:
+    """Their sentences come with the bus family."""
+    assert _facts().assumed == ("RESET stays low for at least three bus clocks.",)
+
+
+def test_not_proven_ends_with_the_notes_of_the_run() -> None:
+    """What can never be proven first, then what this run found worth knowing."""
+    facts = _facts()
+    assert facts.not_proven[: len(NOT_PROVEN)] == NOT_PROVEN
+    assert facts.not_proven[-1] == "AHCT541: no minimum delay is published: the earliest is taken as 0"
+
+
+def test_what_did_not_run_is_on_the_sheet() -> None:
+    """Nothing that failed or was left out is forgotten."""
+    facts = _facts(verdict=MIXED)
+    assert not facts.passed
+    assert facts.open_items == (
+        "failed: margin tRP min: worst of 3 situations: memory write, before opcode fetch",
+        "not run: claim precharge kept (netlist): the prover gave up after 200 s",
+        "not run: bench march, all max (logic, icarus): iverilog is not installed",
+    )
+
+
+def test_a_long_list_of_open_items_ends_with_their_number() -> None:
+    """The sheet stays two pages; the verdict file has them all."""
+    lost = tuple(Finding("bench", f"run {number}", Status.NOT_RUN) for number in range(20))
+    items = _facts(verdict=Verdict(Status.NOT_RUN, lost)).open_items
+    assert items[0] == "not run: bench run 0"
+    assert items[-1] == "and 12 more in verdict.json"
