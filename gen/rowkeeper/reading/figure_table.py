@@ -109,10 +109,10 @@ def read_figures(node: Node | None, columns: Columns, problems: Problems) -> lis
         lows = _per_column(row.node("min"), columns, f"{key.text} min", problems)
         highs = _per_column(row.node("max"), columns, f"{key.text} max", problems)
         sources = _row_sources(row.node("source"), columns, problems)
-        note = row.take("note", plain_text, "")
+        notes = [cell.text if cell else "" for cell in _per_column(row.node("note"), columns, "`note`", problems)]
         if not row.has("min") and not row.has("max"):
             problems.add(value.at, f"{key.text} has neither min nor max", "a typical value is not a limit: give one")
-        for table, low, high, source in zip(tables, lows, highs, sources, strict=True):
+        for table, low, high, source, note in zip(tables, lows, highs, sources, notes, strict=True):
             if low is not None or high is not None:
                 figure = Figure(key.text, _time(low, problems), _time(high, problems), source, note)
                 _check_order(figure, low, high, problems)
