@@ -69,7 +69,7 @@ class Sequencer(Component):
         self.state = Signal(State)
         self.step = Signal(range(longest + 1))  # ticks since the state was entered
         self.rest = Signal(range(ticks.precharge + 1))  # ticks since the row strobe rose, at most `precharge`
-        self.served = Signal()  # the request on the bus has had what it gets
+        self.served = Signal()  # the request on the bus has had what it gets, or came when its address was not captured
 
     def elaborate(self, platform: object) -> Module:
         m = Module()
@@ -107,19 +107,20 @@ class Sequencer(Component):
     def _requests(self, m: Module) -> None:
         """A request is fresh only after its address was captured; what arrives out of turn is left alone."""
         between = (self.state == State.IDLE) | (self.state == State.REST)
-        refreshing = (self.state == State.PREPARE) | (self.state == State.REFRESH)
         m.d.comb += self.follow.eq(between & ~self.request_first & ~self.request)
         with m.If(self.follow):
             m.d.sync += self.served.eq(0)
-        with m.Elif(self.request & (self.granted | ~self.ready | (refreshing & self.refresh))):
-            # A bus refresh that arrives while one of our own is under way is merged into it.
+        with m.Elif(self.request & (self.granted | ~self.ready)):
             m.d.sync += self.served.eq(1)
 
     def _idle(self, m: Module) -> None:
         m.d.sync += self.step.eq(0)
         fresh = self.request & ~self.served & ~self.granted & self.ready
         with m.If(self.due | (fresh & self.refresh)):
+            # Until the address is followed again, no request is fresh: a bus refresh that arrives meanwhile is merged
+            # into this one, and an access would find the refresh row and an old column on the address outputs.
             self._enter(m, State.PREPARE)
+            m.d.sync += self.served.eq(1)
             m.d.comb += self.to_refresh.eq(1)
         with m.Elif(fresh):
             m.d.sync += self.served.eq(1)

@@ -1,0 +1,23 @@
+"""What a claim takes from the bus, in ticks of the device clock, as the logic's first flip-flops sample it.
+
+Takes nothing; a record only. Must not know picoseconds.
+"""
+
+from dataclasses import dataclass
+
+__all__ = ["Bounds"]
+
+
+@dataclass(frozen=True, slots=True)
+class Bounds:
+    """Promises of a legal bus. Least figures are rounded down to whole ticks, most figures up.
+
+    `request_high`, `request_low`: MREQ stays high or low at least this long. `drought`: the longest time without a
+    refresh request of the bus and without a quiet tick at which the sequencer is idle. `legal_gap`: what is claimed
+    of the gap between refresh strobes on such a bus.
+    """
+
+    request_high_ticks: int
+    request_low_ticks: int
+    drought_ticks: int
+    legal_gap_ticks: int
