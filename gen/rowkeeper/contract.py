@@ -74,15 +74,30 @@ class TickTable:
         return self.column + self.row_hold
 
     @property
-    def service(self) -> int:
-        """Most ticks from `forced` being reached to the fall of the refresh strobe, from any state.
+    def rest(self) -> int:
+        """Both strobes have rested this many ticks before the row strobe falls again."""
+        return max(self.precharge, self.column_rest)
 
-        Worst case: a write that starts its column strobe at the last moment, is ended, precharged and followed by
-        the refresh.  See the ranking assertions in `judging/claims`, which prove it.
+    @property
+    def service(self) -> int:
+        """Most ticks from `forced` being reached to the fall of the refresh strobe, from any state; it can happen.
+
+        Worst path: an access begins in the tick before; its write comes at the last tick at which it may (`row_end`),
+        write enable leads the column strobe, which is held until the row strobe may rise and one tick more; the row
+        strobe has rested one tick by then; the rest of precharge (or of the column strobe), one idle tick, the row's
+        set-up. The claim `any-bound` proves it, and one tick less is broken.
         """
-        access = self.row_end + self.write_lead + self.row_hold + 2
-        refresh = self.row_setup + self.refresh_low + 1
-        return max(access, refresh) + max(self.precharge, self.column_rest) + 2 + self.row_setup + 2
+        write = self.row_end + self.write_lead + self.row_hold + 1
+        return write + max(self.precharge - 3, self.column_rest - 2, 0) + 2 + self.row_setup
+
+    def legal_gap(self, drought_ticks: int) -> int:
+        """Most ticks between falls of the refresh strobe on a bus that is never `drought_ticks` without relief.
+
+        Relief: a refresh request in its turn, or a quiet tick with the sequencer idle. Worst path: relief one tick
+        before `standby` does nothing; the next comes a whole drought later, while the strobes have just begun to rest.
+        The claim `legal-bound` proves it, for `forced` at least as large.
+        """
+        return self.standby + drought_ticks + self.rest + self.row_setup
 
 
 @dataclass(frozen=True, slots=True)
@@ -304,7 +319,7 @@ class FitOutcome:
 
 @dataclass(frozen=True, slots=True)
 class PinRow:
-    """One package pin as the sheet shows it. `direction`: in, out, supply, ground, config or none (leave open)."""
+    """One package pin as the sheet shows it. `direction`: input, output, supply, ground, config or open."""
 
     pin: str
     function: str
