@@ -255,6 +255,9 @@ class Bank:
     size: int
     at: Position = NOWHERE
     sockets: str = ""  # designators on the board, `U10-U17`
+    chips_at: Position = NOWHERE
+    base_at: Position = NOWHERE
+    size_at: Position = NOWHERE
 
 
 @dataclass(frozen=True, slots=True)
@@ -300,6 +303,7 @@ class Net:
     through: tuple[PathElement, ...]
     at: Position = NOWHERE
     pin_at: Position = NOWHERE
+    meets_at: Position = NOWHERE
 
 
 @dataclass(frozen=True, slots=True)

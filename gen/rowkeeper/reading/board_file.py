@@ -11,7 +11,6 @@ from rowkeeper.reading.board import Bank, Board, BusFamily, Device, Net, Wiring
 from rowkeeper.reading.catalogue import Catalogue
 from rowkeeper.reading.levels import check_levels
 from rowkeeper.reading.names import check_slug
-from rowkeeper.reading.position import Position
 from rowkeeper.reading.problems import Problems
 from rowkeeper.reading.section import Section
 from rowkeeper.reading.sensible import (
@@ -154,11 +153,13 @@ class _Reader:
         check_banks(banks, problems)
         if bus.family is None:
             return
+        before = len(problems)
         for bank in banks:
             check_bank(bank, bus.family, problems)
+        fitting = banks if len(problems) == before else ()
         check_refresh(refresh, banks, bus.family, problems)
         if self._sections.has("wiring"):
-            self._check_wiring(bus, bus.family, banks, device, wiring.nets)
+            self._check_wiring(bus, bus.family, fitting, device, wiring.nets)
 
     def _check_wiring(
         self, bus: BusPart, family: BusFamily, banks: tuple[Bank, ...], device: Device | None, nets: tuple[Net, ...]
@@ -172,15 +173,13 @@ class _Reader:
         for bank in banks[:1]:
             bits = max(bank.chip.row_bits, bank.chip.column_bits)
             needed = [n for n in all_nets(family.address_bits, bits) if n not in _OPTIONAL_LINES]
-            self._check_needed(needed, nets, at)
+            if len(nets) == len(self._sections.items("wiring")):  # else a net that seems missing has a wrong name
+                check_needed(nets, needed, at, problems)
             check_sockets(nets, bank, problems)
             check_loads(nets, bank, problems)
             for net in nets if device is not None else ():
                 assert device is not None
                 check_levels(net, bank.chip, family, device, problems)
-
-    def _check_needed(self, needed: list[str], nets: tuple[Net, ...], at: Position) -> None:
-        check_needed(nets, needed, at, self._problems)
 
     def _digest(self, data: bytes) -> str:
         """SHA-256 over the board file and every catalogue file used, each with its label and length."""

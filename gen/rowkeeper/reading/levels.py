@@ -78,7 +78,7 @@ def _check_wire(net: Net, driver: _End, receiver: _End, problems: Problems) -> N
         )
         return
     needed = _NOISE_MARGIN_MV if driver.is_device and receiver.is_memory else 0
-    beyond = f", and a margin of {_volts(needed)} with it" if needed else ""
+    beyond = f" and a margin of {_volts(needed)}" if needed else ""
     if d.voh_min_mv is not None and r.vih_min_mv is not None and d.voh_min_mv < r.vih_min_mv + needed:
         problems.add(
             net.at,
@@ -109,7 +109,9 @@ def _check_rail(net: Net, driver: _End | None, device: Device, problems: Problem
 
 
 def check_levels(net: Net, chip: Chip, bus: BusFamily, device: Device, problems: Problems) -> None:
-    """Every wire of one net."""
+    """Every wire of one net. A net without its path was refused already."""
+    if not net.through:
+        return
     driver = _check_rail(net, _driver(net, chip, bus, device), device, problems)
     for element in net.through:
         if element.part is None:

@@ -89,16 +89,22 @@ def quoted(text: str) -> str:
     return f"`{clean if len(clean) <= _QUOTED_WIDTH else clean[:_QUOTED_WIDTH] + '...'}`"
 
 
+def _line_and_caret(line: str, index: int) -> tuple[str, str]:
+    """The line, cut to a window around the place if it is long, and a caret under the place."""
+    start = max(0, index - _SHOWN_WIDTH + 40)
+    shown = "".join(c if c.isprintable() else "?" for c in line[start : start + _SHOWN_WIDTH]).rstrip()
+    before = "..." if start else ""
+    after = "..." if start + _SHOWN_WIDTH < len(line) else ""
+    return f"    {before}{shown}{after}", " " * (4 + len(before) + index - start) + "^"
+
+
 def printed(problem: Problem) -> str:
     """`file:line:col: message`, the line, a caret under the place, and the fix."""
     at = problem.at
     place = f"{at.file}:{at.line}:{at.column}" if at.line else at.file
     text = [f"{place}: {problem.message}"]
     if at.line and problem.line.strip():
-        start = max(0, at.column - _SHOWN_WIDTH + 30)
-        shown = problem.line[start : start + _SHOWN_WIDTH]
-        text.append("    " + "".join(c if c.isprintable() else "?" for c in shown).rstrip())
-        text.append("    " + " " * (at.column - 1 - start) + "^")
+        text += _line_and_caret(problem.line, at.column - 1)
     if problem.fix:
         text.append(f"  fix: {problem.fix}")
     return "\n".join(text)

@@ -36,22 +36,27 @@ class Section:
         self._entries: dict[str, Node] = {}
         required = tuple(required)
         if not isinstance(node, Block):
-            problems.add(node.at, f"{what} must be a block of keys", f"write {listed(required[:3], 'and')} under it")
+            keys = required or tuple(optional)
+            problems.add(
+                node.at, f"{what} must be a block of keys", f"write `{{{', '.join(f'{key}: ...' for key in keys)}}}`"
+            )
             return
         self._sort(node, required, tuple(optional))
 
     def _sort(self, node: Block, required: tuple[str, ...], optional: tuple[str, ...]) -> None:
         allowed = required + optional
+        guessed: set[str] = set()
         for key, value in node.entries:
             if key.text in allowed:
                 self._entries[key.text] = value
                 continue
             missing = [name for name in allowed if name not in {k.text for k, _ in node.entries}]
             guess = nearest(key.text, missing) or nearest(key.text, allowed)
+            guessed.add(guess or "")
             fix = f"did you mean `{guess}`?" if guess else f"the keys here are {listed(allowed, 'and')}"
             self.problems.add(key.at, f"{self.what} has no key {quoted(key.text)}", fix)
         for name in required:
-            if name not in self._entries:
+            if name not in self._entries and name not in guessed:
                 self.problems.add(self.at, f"{self.what} lacks the key `{name}`", f"add `{name}:`")
 
     @property
@@ -147,7 +152,7 @@ def one_of(scalar: Scalar, names: Iterable[str], what: str, problems: Problems) 
     known = tuple(names)
     if scalar.text in known:
         return scalar.text
-    guess = nearest(scalar.text, known)
+    guess = None if any(c.isdigit() for c in scalar.text) else nearest(scalar.text, known)  # 5 MHz is not like 2.5 MHz
     choices = f"the choices are {listed(known)}"
     fix = f"did you mean `{guess}`? {choices[0].upper()}{choices[1:]}" if guess else f"{choices}"
     problems.add(scalar.at, f"{quoted(scalar.text)} is not a known {what}", fix)

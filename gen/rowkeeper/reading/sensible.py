@@ -45,7 +45,7 @@ def check_bank(bank: Bank, bus: BusFamily, problems: Problems) -> None:
     chip = bank.chip
     if bank.chips * chip.width != bus.data_width:
         problems.add(
-            bank.at,
+            bank.chips_at,
             f"{bank.chips} chips of {chip.width} bit make {bank.chips * chip.width} bits, the bus has {bus.data_width}",
             f"write `chips: {bus.data_width // chip.width}`",
         )
@@ -53,20 +53,20 @@ def check_bank(bank: Bank, bus: BusFamily, problems: Problems) -> None:
     if bank.size != held:
         relation = "larger" if bank.size > held else "smaller"
         problems.add(
-            bank.at,
+            bank.size_at,
             f"a window of {_size(bank.size)} is {relation} than its chips, which hold {_size(held)}",
             f"write `size: {_size(held)}`",
         )
         return
     if bank.base % bank.size:
         problems.add(
-            bank.at,
+            bank.base_at,
             f"the window base 0x{bank.base:04X} is not a multiple of its size, {_size(bank.size)}",
             f"the nearest below is 0x{bank.base - bank.base % bank.size:04X}",
         )
     elif bank.base + bank.size > 1 << bus.address_bits:
         problems.add(
-            bank.at,
+            bank.base_at,
             f"the window ends beyond the {bus.address_bits} address bits of the bus",
             f"the last base is 0x{(1 << bus.address_bits) - bank.size:04X}",
         )
@@ -74,12 +74,13 @@ def check_bank(bank: Bank, bus: BusFamily, problems: Problems) -> None:
 
 def check_banks(banks: Sequence[Bank], problems: Problems) -> None:
     """Banks do not overlap, have a number each, and there is one of them."""
+    before = len(problems)
     for i, bank in enumerate(banks):
         for other in banks[:i]:
             if bank.base < other.base + other.size and other.base < bank.base + bank.size:
                 problems.add(
-                    bank.at,
-                    f"bank {bank.number} overlaps bank {other.number} in line {other.at.line}",
+                    bank.base_at,
+                    f"bank {bank.number} overlaps bank {other.number} in line {other.base_at.line}",
                     "give every bank a window of its own",
                 )
             if bank.number == other.number:
@@ -88,7 +89,7 @@ def check_banks(banks: Sequence[Bank], problems: Problems) -> None:
                     f"bank {bank.number} stands twice: first in line {other.at.line}",
                     "number the banks from 0",
                 )
-    if len(banks) > 1:
+    if len(banks) > 1 and len(problems) == before:
         problems.add(
             banks[1].at,
             "a second bank needs a second row strobe, which is not built yet",
@@ -190,12 +191,14 @@ def _places(meets: str) -> Iterator[str]:
 def check_places(nets: Sequence[Net], problems: Problems) -> None:
     """No two nets meet one pin on the board."""
     taken: dict[str, Net] = {}
+    noted: set[tuple[str, str]] = set()
     for net in nets:
         for place in _places(net.meets):
             first = taken.setdefault(place, net)
-            if first is not net:
+            if first is not net and (first.name, net.name) not in noted:
+                noted.add((first.name, net.name))
                 problems.add(
-                    net.at,
+                    net.meets_at,
                     f"{net.name} meets {place}, and so does {first.name} in line {first.at.line}",
                     "let one pin of the board carry one net",
                 )
@@ -209,10 +212,14 @@ def check_sockets(nets: Sequence[Net], bank: Bank, problems: Problems) -> None:
         pin = pin_of.get(signal)
         if pin is not None and net.meets and net.meets != f"{bank.sockets}.{pin}":
             problems.add(
-                net.at,
+                net.meets_at,
                 f"net {net.name} meets {net.meets}, but {signal} of {bank.chip.name} is pin {pin} of {bank.sockets}",
                 f"write `meets: {bank.sockets}.{pin}`",
             )
+
+
+def _channels(number: int) -> str:
+    return "one channel" if number == 1 else f"{number} channels"
 
 
 def check_channels(nets: Sequence[Net], data_width: int, problems: Problems) -> None:
@@ -228,7 +235,7 @@ def check_channels(nets: Sequence[Net], data_width: int, problems: Problems) -> 
             if first != name:
                 problems.add(
                     element.at,
-                    f"{place} is a {name} here, but a {first} in line {first_at.line}",
+                    f"{place} is {name} here, but {first} in line {first_at.line}",
                     "name one of the two",
                 )
                 continue
@@ -237,7 +244,7 @@ def check_channels(nets: Sequence[Net], data_width: int, problems: Problems) -> 
             if before <= element.part.channels < used[place]:
                 problems.add(
                     element.at,
-                    f"{place} carries more nets than the {element.part.channels} channels of a {name}",
+                    f"{place} carries more than the {_channels(element.part.channels)} that {name} has",
                     "use a second package",
                 )
 

@@ -16,7 +16,7 @@ from rowkeeper.reading.names import designator_range, title
 from rowkeeper.reading.position import Position
 from rowkeeper.reading.problems import Problems, listed, nearest, quoted
 from rowkeeper.reading.section import Section, one_of, read_span
-from rowkeeper.reading.tree import Block, Node, Scalar, places_of
+from rowkeeper.reading.tree import Block, Listing, Node, Scalar, places_of
 from rowkeeper.reading.units import (
     address,
     count,
@@ -179,15 +179,16 @@ def _bank(node: Node, catalogue: Catalogue, problems: Problems) -> Bank | None:
         )
     window = Section(section.node("window") or Block((), node.at), "`window`", problems, ("base", "size"))
     base, size = window.take("base", address, 0), window.take("size", size_bytes, 0)
-    if chip is None:
+    if chip is None or not section.whole:
         return None
-    return Bank(number, chip, chips, base, size, node.at, sockets[0])
+    places = (section.at_key("chips"), window.at_key("base"), window.at_key("size"))
+    return Bank(number, chip, chips, base, size, node.at, sockets[0], *places)
 
 
 def read_banks(section: Section, catalogue: Catalogue, problems: Problems) -> tuple[Bank, ...]:
     """`memory:`, a list of banks."""
     items = section.items("memory")
-    if section.has("memory") and not items:
+    if isinstance(node := section.node("memory"), Listing) and not node.items:
         problems.add(section.at_key("memory"), "`memory` lists no bank", "add one bank")
     banks = [_bank(item, catalogue, problems) for item in items]
     return tuple(bank for bank in banks if bank is not None)

@@ -63,6 +63,7 @@ class _Builder:
         self._problems = problems
         self._events: Iterator[yaml.Event] = iter(yaml.parse(text, Loader=yaml.SafeLoader))
         self._count = 0
+        self.broken = False  # the tree no longer says what the file says: checking it on would mislead
 
     def _at(self, event: yaml.Event) -> Position:
         start, end = event.start_mark, event.end_mark
@@ -87,6 +88,7 @@ class _Builder:
         if event.version or event.tags:
             self._problems.add(self._at(event), "a YAML directive stands here", "delete the line that begins with %")
         if documents > 1:
+            self.broken = True
             self._problems.add(
                 self._at(event), "a second document begins here", "keep one document per file: delete this `---`"
             )
@@ -112,6 +114,7 @@ class _Builder:
     def _refuse_references(self, event: yaml.Event, at: Position) -> None:
         if isinstance(event, yaml.AliasEvent):
             self._problems.add(at, f"an alias ({quoted(f'*{event.anchor}')}) stands here", "write the value out")
+            self.broken = True
             return
         anchor, tag = getattr(event, "anchor", None), getattr(event, "tag", None)
         if anchor:
@@ -121,8 +124,10 @@ class _Builder:
 
     def _scalar(self, event: yaml.ScalarEvent, at: Position) -> Scalar:
         if event.style in ("|", ">"):
+            self.broken = True
             self._problems.add(at, f"a text block (`{event.style}`) stands here", "write the text on one line")
         elif event.start_mark and event.end_mark and event.start_mark.line != event.end_mark.line:
+            self.broken = True
             self._problems.add(
                 at, "this value runs over several lines", "write it on one line; perhaps a colon or a quote is missing"
             )
@@ -148,9 +153,11 @@ class _Builder:
 
     def _accepts(self, key: Node, seen: dict[str, Position]) -> bool:
         if not isinstance(key, Scalar):
+            self.broken = True
             self._problems.add(key.at, "a key must be a plain word", "write `word: value`")
             return False
         if key.text == "<<":
+            self.broken = True
             self._problems.add(key.at, "a merge (`<<`) stands here", "write the keys out")
             return False
         if key.text in seen:
@@ -167,9 +174,7 @@ _SYNTAX_FIXES = (
     ("mapping values are not allowed", "put the value in quotes if it holds `: `, or mend the indentation"),
     ("could not find expected ':'", "write `key: value`, with a space after the colon"),
     ("found undefined tag handle", "delete the tag: every value is read as text"),
-    ("expected ',' or", "close the bracket, or put a comma between two entries"),
     ("expected <block end>", "mend the indentation: entries of one block begin in the same column"),
-    ("while scanning a quoted scalar", "close the quote"),
     ("found unexpected end of stream", "close the quote or the bracket"),
     ("cannot start any token", "put the value in quotes"),
 )
@@ -177,8 +182,17 @@ _SYNTAX_FIXES = (
 
 def _note_syntax(error: yaml.YAMLError, file: str, problems: Problems) -> None:
     """A file that is not YAML at all: the parser's reason, in its place."""
-    mark = getattr(error, "problem_mark", None) or getattr(error, "context_mark", None)
+    mark, opened = getattr(error, "problem_mark", None), getattr(error, "context_mark", None)
+    context = str(getattr(error, "context", None) or "")
+    if "quoted scalar" in context and opened:
+        at = Position(file, opened.line + 1, opened.column + 1)
+        problems.add(at, "this quote is not closed", "close it in the same line")
+        return
     at = Position(file, mark.line + 1, mark.column + 1) if mark else Position(file, 1, 1)
+    if "flow" in context and opened:
+        message = f"the bracket opened in line {opened.line + 1} is not closed before this, or a comma is missing"
+        problems.add(at, message, "close the bracket, or put a comma between two entries")
+        return
     reason = str(getattr(error, "problem", None) or "unreadable")
     fix = next((fix for key, fix in _SYNTAX_FIXES if key in reason), "mend this line")
     problems.add(at, f"this is not readable as YAML: {reason}", fix)
@@ -186,16 +200,18 @@ def _note_syntax(error: yaml.YAMLError, file: str, problems: Problems) -> None:
 
 def read_tree(text: str, file: str, problems: Problems) -> Node | None:
     """The tree of a file, or None with the reasons noted. Some problems leave a tree that can still be checked on."""
+    builder = _Builder(text, file, problems)
     try:
-        root = _Builder(text, file, problems).document()
+        root = builder.document()
     except yaml.YAMLError as error:
-        _note_syntax(error, file, problems)
+        if not builder.broken:  # else this is the same mistake seen twice
+            _note_syntax(error, file, problems)
         return None
     except _TooMuchError:
         return None
     if root is None:
         problems.add(Position(file, 1, 1), "this file is empty", "write a description into it, or name the right file")
-    return root
+    return None if builder.broken else root
 
 
 def places_of(node: Node, prefix: str = "") -> Iterator[tuple[str, Position]]:

@@ -112,6 +112,7 @@ def _path(section: Section, name: str, catalogue: Catalogue, problems: Problems)
     if not section.has("through"):
         problems.add(section.at, f"net {name} does not say what it passes through", fix)
         return ()
+    before = len(problems)
     items = section.items("through")
     if not items and section.whole:
         problems.add(section.at_key("through"), f"net {name} passes through nothing", fix)
@@ -119,7 +120,7 @@ def _path(section: Section, name: str, catalogue: Catalogue, problems: Problems)
     loads = [i for i, element in enumerate(path) if element.kind == "load"]
     if len(loads) > 1 or (loads and loads[0] != len(path) - 1):
         problems.add(path[loads[0]].at, f"the load of net {name} is not the last entry", "put one load, at the end")
-    return path
+    return path if len(problems) == before else ()
 
 
 def _name(section: Section, expected: tuple[str, ...], problems: Problems) -> str:
@@ -164,7 +165,16 @@ def _net(node: Node, expected: tuple[str, ...], catalogue: Catalogue, problems: 
     if not name:
         return None
     pin, pin_at = _pin(section, name, problems)
-    return Net(name, side_of(name), pin, meets, _path(section, name, catalogue, problems), node.at, pin_at)
+    return Net(
+        name,
+        side_of(name),
+        pin,
+        meets,
+        _path(section, name, catalogue, problems),
+        node.at,
+        pin_at,
+        section.at_key("meets"),
+    )
 
 
 def _only_once(nets: Iterable[Net], problems: Problems) -> tuple[Net, ...]:
@@ -187,7 +197,7 @@ def _lines(section: Section, key: str, problems: Problems) -> tuple[str, ...]:
 def read_wiring(
     wiring: Node | None, parts: Node | None, expected: tuple[str, ...], catalogue: Catalogue, problems: Problems
 ) -> Wiring:
-    """Nets in file order, and the parts to remove, keep and add."""
+    """Nets in file order, and the parts to remove, keep and add. An entry whose net is not known is left out."""
     items = () if wiring is None else read_listing(wiring, "`wiring`", problems)
     found = [_net(item, expected, catalogue, problems) for item in items]
     nets = _only_once((net for net in found if net is not None), problems)
