@@ -14,6 +14,7 @@ from rowkeeper.reading.board import (
     Device,
     GivenTicks,
     IoLevels,
+    Part,
     Wiring,
 )
 from rowkeeper.reading.figures import Figure, Mark, Source
@@ -43,9 +44,11 @@ CHIP = Chip(
     output_levels=_LEVELS,
     strobe_pf_max=10,
     address_pf_max=5,
-    supplies=("+12 V", "+5 V", "-5 V"),
+    supplies=("VDD 10.8 to 13.2 V", "VCC 4.5 to 5.5 V", "VBB -4.5 to -5.5 V"),
     pins={},
+    notes=("VBB must never be above VSS while VDD is up.", "Pin 8 is +12 V."),
 )
+BUFFER = Part("SN74LS244", "buffer", "buffer", 8, 5000, _FIGURE, None, None, None, _LEVELS, _LEVELS, 5)
 FAMILY = BusFamily(
     name="m1-refresh",
     title="8-bit bus with M1, MREQ and RFSH (UM0080)",

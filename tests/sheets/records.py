@@ -17,7 +17,7 @@ from rowkeeper.contract import (
     Verdict,
 )
 from rowkeeper.reading.figures import Mark, Source
-from rowkeeper.sheets.facts import HANDLING, NOT_PROVEN, SheetFacts
+from rowkeeper.sheets.facts import HANDLING, NOT_PROVEN, PathRow, SheetFacts
 from rowkeeper.sheets.stamp import Stamp, short_digest
 
 DIGEST = "3f9a0c51d27be84610aa5b7c9e0d4f2286b1c3d5e7f90a1b2c3d4e5f60718293"
@@ -172,14 +172,14 @@ def _wired() -> dict[int, PinRow]:
 
 def _signal(pin: int, name: str) -> PinRow:
     if name == "clk":
-        return PinRow(str(pin), "GBIN5", name, "in", "3.3 V", "X1.3 oscillator 100 MHz", "plain wire", "")
+        return PinRow(str(pin), "GBIN5", name, "input", "3.3 V", "X1.3 oscillator 100 MHz", "plain wire", "")
     if name in _LEFT or name in _STROBES:
         package = "U31" if name in _STROBES else "U32"
         meets = "U19.19 (data out enable)" if name == "read_n" else f"U5 to U12, {name}"
         through = f"{package} SN74AHCT541 at 5.0 V, 33 ohm, load 80 pF"
         note = "pull-up 10 kohm to 3.3 V" if name in _STROBES else ""
-        return PinRow(str(pin), "IO", name, "out", "3.3 V", meets, through, note)
-    return PinRow(str(pin), "IO", name, "in", "3.3 V", f"J1.{pin}", "U33 SN74LVC245A at 3.3 V", "")
+        return PinRow(str(pin), "IO", name, "output", "3.3 V", meets, through, note)
+    return PinRow(str(pin), "IO", name, "input", "3.3 V", f"J1.{pin}", "U33 SN74LVC245A at 3.3 V", "")
 
 
 def pin_rows() -> tuple[PinRow, ...]:
@@ -197,7 +197,7 @@ def _other(pin: int) -> PinRow:
         return PinRow(str(pin), "GND", "", "ground", "0 V", "", "", "")
     if pin in _CONFIG:
         return PinRow(str(pin), _CONFIG[pin], "", "config", "3.3 V", "", "", "")
-    return PinRow(str(pin), "IO", "", "none", "", "", "", "")
+    return PinRow(str(pin), "IO", "", "open", "", "", "", "leave open")
 
 
 FACTS = SheetFacts(
@@ -217,6 +217,10 @@ FACTS = SheetFacts(
     device="iCE40 HX1K",
     package="VQ100",
     pins=pin_rows(),
+    paths=(
+        PathRow("DATA_IN", "U5 to U12, pin 2", "plain wire, load 50 pF"),
+        PathRow("DATA_OUT", "U5 to U12, pin 14", "U19 SN74LS244 at 5.0 V, load 45 pF"),
+    ),
     remove=("U1, U2 address multiplexers", "U3 row counter", "U4 delay line with R3, C7, C8"),
     keep=("U19 SN74LS244 data out buffer", "U5 to U12 memory chips", "Capacitors at each memory chip"),
     add=(
@@ -231,6 +235,7 @@ FACTS = SheetFacts(
         "Three-supply chips: -5 V comes on FIRST and goes off LAST, every time.",
         "Switch on without chips and measure each supply.",
     ),
+    chips=("4116-15: VBB must never be above VSS while VDD is up.",),
     assumed=(
         "RESET, when it falls, stays low for at least three bus clocks.",
         "A bus grant goes to a master that leaves this memory alone.",

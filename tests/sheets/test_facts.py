@@ -3,10 +3,10 @@
 from dataclasses import replace
 
 from rowkeeper.contract import Finding, Status, Verdict
-from rowkeeper.reading.board import Board
-from rowkeeper.sheets.facts import NOT_PROVEN, SheetFacts, board_stamp, sheet_facts
+from rowkeeper.reading.board import Board, Net, PathElement
+from rowkeeper.sheets.facts import NOT_PROVEN, PathRow, SheetFacts, board_stamp, sheet_facts
 from rowkeeper.sheets.stamp import Stamp
-from sheets.boards import BOARD, CHIP
+from sheets.boards import BOARD, BUFFER, CHIP
 from sheets.records import DIGEST, MIXED, NOTES, PASSED, pin_rows
 
 
@@ -18,14 +18,39 @@ def test_head() -> None:
     """What the board is, from the board file and the catalogue."""
     assert _facts().summary == (
         ("Memory", "8 × 4116-15, 16 KiB from 0xC000, 128 rows to refresh"),
-        ("Bus", "8-bit bus with M1, MREQ and RFSH (UM0080), 4 MHz part at 4 MHz"),
-        ("Device", "iCE40 HX1K, VQ100, 100 MHz clock"),
+        ("Bus", "8-bit bus with M1, MREQ and RFSH (UM0080), 4 MHz grade, clocked at 4 MHz"),
+        ("Device", "iCE40 HX1K in VQ100, 100 MHz clock"),
     )
 
 
 def test_stamp_of_a_board() -> None:
     """Slug, not name: a slug cannot hold anything strange."""
     assert board_stamp(BOARD, "0.1.0") == Stamp("0.1.0", "loom-16k", "B", DIGEST)
+
+
+def test_package_is_said_once() -> None:
+    """A title that already names the package is left alone."""
+    titled = replace(BOARD, device=replace(BOARD.device, title="iCE40 HX1K in VQ100"))
+    assert (_facts().device, _facts(titled).device) == ("iCE40 HX1K in VQ100", "iCE40 HX1K in VQ100")
+
+
+def test_notes_of_chips_and_device_are_joined() -> None:
+    """One entry per part that has something to say."""
+    assert _facts().chips == ("4116-15: VBB must never be above VSS while VDD is up. Pin 8 is +12 V.",)
+
+
+def test_data_path() -> None:
+    """A net without a pin: what it meets and what it passes."""
+    path = (
+        PathElement("part", part=BUFFER, designator="U6"),
+        PathElement("series", series_milliohm=33_000),
+        PathElement("load", load_ff=45_500),
+        PathElement("direct"),
+    )
+    nets = (Net("data_out", "path", "", "U10-U17.14", path), Net("clk", "input", "15", "Y1.3", ()))
+    facts = _facts(replace(BOARD, wiring=replace(BOARD.wiring, nets=nets)))
+    through = "U6 SN74LS244 at 5.0 V, 33 ohm, load 45.5 pF, plain wire"
+    assert facts.paths == (PathRow("DATA_OUT", "U10-U17.14", through),)
 
 
 def test_parts_are_one_line_each() -> None:
@@ -38,7 +63,7 @@ def test_three_supply_chips_want_the_negative_one_first() -> None:
     """Common practice with three-supply parts: the substrate bias is first on and last off."""
     order = _facts().order
     (step,) = [step for step in order if "FIRST" in step]
-    assert step == "Three-supply chips: -5 V comes on FIRST and goes off LAST, every time."
+    assert step == "Three-supply chips: VBB -4.5 to -5.5 V comes on FIRST and goes off LAST, every time."
     assert order.index(step) < min(place for place, text in enumerate(order) if "Switch on" in text)
 
 

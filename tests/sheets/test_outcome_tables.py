@@ -9,7 +9,6 @@ from hypothesis import strategies as st
 from rowkeeper.contract import BenchOutcome, ClaimOutcome, Finding, Status, Verdict
 from rowkeeper.sheets import outcome_tables as t
 from rowkeeper.sheets.columns import WIDTH, shown_width
-from rowkeeper.sheets.parts_tables import catalogue_text, figures_text
 from sheets.records import BENCH, CLAIM, MIXED, PASSED
 
 Golden = Callable[[str, str], None]
@@ -74,16 +73,3 @@ def test_nothing_judged_is_loud() -> None:
 def test_an_absent_group_is_named() -> None:
     """A verdict without bench runs says that there were none."""
     assert "Refresh: no check of this kind in this run" in t.verdict_text(MIXED)
-
-
-def test_golden_parts(golden: Golden) -> None:
-    """The catalogue, and the figures of one part."""
-    rows = [("tRC", "375", "", "ns", "MK4116 p. 4", "copy"), ("tRAS", "150", "10000", "ns", "MK4116 p. 4", "copy")]
-    listed = catalogue_text([("chips", [("4116-15", "16K x 1, 150 ns")]), ("devices", [])])
-    golden("parts.txt", listed + "\n" + figures_text("4116-15: 16K x 1, 150 ns", rows, ["derate above 65 °C"]))
-
-
-@given(st.lists(st.tuples(*[st.text(max_size=70)] * 6), max_size=3), st.lists(TEXT, max_size=2), TEXT)
-def test_parts_tables_keep_to_the_page(rows: list[tuple[str, ...]], notes: list[str], title: str) -> None:
-    """No scrolling sideways."""
-    assert _widest(figures_text(title, rows, notes), catalogue_text([(title, [row[:2] for row in rows])])) <= WIDTH

@@ -4,17 +4,19 @@ Takes a board, its pin rows, the verdict and the notes of a run; gives `SheetFac
 out, nor how any of it was found.
 """
 
+import re
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
+from fractions import Fraction
 
 from rowkeeper.contract import Finding, Note, PinRow, Status, Verdict
-from rowkeeper.reading.board import Bank, Board
+from rowkeeper.reading.board import Bank, Board, Net, PathElement
 from rowkeeper.sheets.outcome_tables import verdict_line
-from rowkeeper.sheets.plain import one_line
-from rowkeeper.sheets.quantities import bytes_text, frequency, hexadecimal
+from rowkeeper.sheets.plain import net_label, one_line
+from rowkeeper.sheets.quantities import bytes_text, decimal, frequency, hexadecimal, volts
 from rowkeeper.sheets.stamp import Stamp, short_digest
 
-__all__ = ["NOT_PROVEN", "SheetFacts", "board_stamp", "sheet_facts"]
+__all__ = ["HANDLING", "NOT_PROVEN", "PathRow", "SheetFacts", "board_stamp", "sheet_facts"]
 
 # What no margin, proof or simulation of this tool can see.
 NOT_PROVEN = (
@@ -29,6 +31,16 @@ NOT_PROVEN = (
 
 
 _OPEN_SHOWN = 8
+_NEGATIVE = re.compile(r"(?:^|\s)[-\N{MINUS SIGN}]\s?\d")
+
+
+@dataclass(frozen=True, slots=True)
+class PathRow:
+    """A net of the board that does not touch the device: the data path."""
+
+    net: str
+    meets: str
+    through: str
 
 
 @dataclass(frozen=True, slots=True)
@@ -47,11 +59,13 @@ class SheetFacts:
     device: str
     package: str
     pins: tuple[PinRow, ...]
+    paths: tuple[PathRow, ...]
     remove: tuple[str, ...]
     keep: tuple[str, ...]
     add: tuple[str, ...]
     handling: tuple[str, ...]
     order: tuple[str, ...]
+    chips: tuple[str, ...]
     assumed: tuple[str, ...]
     not_proven: tuple[str, ...]
     open_items: tuple[str, ...]
@@ -76,14 +90,16 @@ def sheet_facts(
         summary=_summary(board),
         passed=verdict.status is Status.PASSED,
         verdict=verdict_line(verdict),
-        device=one_line(board.device.title),
+        device=_device(board),
         package=board.device.package.upper(),
         pins=tuple(pins),
+        paths=tuple(_path(net) for net in board.wiring.nets if net.side == "path"),
         remove=_lines(board.wiring.remove),
         keep=_lines(board.wiring.keep),
         add=_lines(board.wiring.add),
         handling=HANDLING,
         order=_order(board),
+        chips=_chip_notes(board),
         assumed=_lines(board.bus.assumptions.values()),
         not_proven=(*NOT_PROVEN, *(one_line(f"{note.topic}: {note.text}") for note in notes)),
         open_items=_open_items(verdict.findings),
@@ -109,16 +125,43 @@ def _open(finding: Finding) -> str:
 
 def _summary(board: Board) -> tuple[tuple[str, str], ...]:
     """What the board is, in a few lines for the head of the sheet."""
-    bus = f"{board.bus.title}, {board.grade.name} part at {frequency(board.bus_clock.frequency_hz)}"
-    device = f"{board.device.title}, {board.device.package.upper()}, {frequency(board.device_clock.frequency_hz)} clock"
+    bus = f"{board.bus.title}, {board.grade.name} grade, clocked at {frequency(board.bus_clock.frequency_hz)}"
+    device = f"{_device(board)}, {frequency(board.device_clock.frequency_hz)} clock"
     banks = "; ".join(map(_bank, board.banks))
     return (("Memory", one_line(banks)), ("Bus", one_line(bus)), ("Device", one_line(device)))
+
+
+def _device(board: Board) -> str:
+    """The device with its package, said once."""
+    title, package = one_line(board.device.title), board.device.package.upper()
+    return title if package in title else f"{title} in {package}"
 
 
 def _bank(bank: Bank) -> str:
     chip = bank.chip
     where = f"{bytes_text(bank.size)} from {hexadecimal(bank.base)}"
     return f"{bank.chips} × {chip.name}, {where}, {chip.refresh_rows} rows to refresh"
+
+
+def _chip_notes(board: Board) -> tuple[str, ...]:
+    """What the catalogue has to say of the chips and of the device, each part once."""
+    notes = {bank.chip.name: bank.chip.notes for bank in board.banks} | {board.device.name: board.device.notes}
+    return tuple(one_line(f"{name}: {' '.join(said)}") for name, said in notes.items() if said)
+
+
+def _path(net: Net) -> PathRow:
+    return PathRow(net_label(net.name), one_line(net.meets), ", ".join(map(_element, net.through)))
+
+
+def _element(element: PathElement) -> str:
+    """One thing that a net passes through."""
+    if element.part is not None:
+        return one_line(f"{element.designator} {element.part.name} at {volts(element.part.supply_mv)}")
+    if element.kind == "series":
+        return f"{decimal(Fraction(element.series_milliohm, 1000))} ohm"
+    if element.kind == "load":
+        return f"load {decimal(Fraction(element.load_ff, 1000))} pF"
+    return "plain wire"
 
 
 HANDLING = (
@@ -134,7 +177,7 @@ HANDLING = (
 def _order(board: Board) -> tuple[str, ...]:
     """The order of work up to the first switch-on, by the supplies of the chips."""
     supplies = tuple(dict.fromkeys(name for bank in board.banks for name in bank.chip.supplies))
-    negative = [one_line(name) for name in supplies if name.lstrip().startswith(("-", "\u2212"))]
+    negative = [one_line(name) for name in supplies if _NEGATIVE.search(name)]
     listed = ", ".join(map(one_line, supplies))
     rails = f"Memory chips out. Switch on and measure each supply at the sockets ({listed}), then at the device."
     steps = [

@@ -18,6 +18,8 @@ from rowkeeper.sheets.plain import net_label, one_line
 __all__ = ["sheet_html"]
 
 _BEFORE_UNIT = re.compile(r"(?<=\d) (?=(?:[mk]?V|[numk]?s|[pnu]F|[kM]?ohm|[kMG]?Hz|[KM]iB|ppm|%)\b)")
+_LETTERS_A_LINE = 48  # of a text column of the second page
+_TEXT_COLUMNS = 3
 _FIXED_SPACE = "\N{NO-BREAK SPACE}"
 
 
@@ -36,29 +38,37 @@ class WiredPin:
 
 @dataclass(frozen=True, slots=True)
 class FixedPins:
-    """The pins of one function that the device itself fixes: a supply, ground, a configuration pin."""
+    """Pins that the device itself fixes and that want the same: supplies of one level, ground, a configuration pin."""
 
-    function: str
-    level: str
-    pins: str
-    note: str
+    functions: tuple[tuple[str, str], ...]  # function and its pins
+    remark: str
 
 
 def sheet_html(facts: SheetFacts) -> str:
     """The whole sheet."""
     rows = facts.pins
-    page = (
-        _environment()
-        .get_template("sheet.html.j2")
-        .render(
-            facts=facts,
-            view=package_view(rows),
-            wired=[_wired(row) for row in rows if kind_of(row) in ("in", "out")],
-            fixed=_fixed(row for row in rows if kind_of(row) == "fixed"),
-            open_pins=_spans([one_line(row.pin) for row in rows if kind_of(row) == "open"]),
-        )
+    wired = [_wired(row) for row in rows if kind_of(row) in ("in", "out")]
+    fixed = _fixed(row for row in rows if kind_of(row) == "fixed")
+    template = _environment().get_template("sheet.html.j2")
+    page = template.render(
+        facts=facts,
+        view=package_view(rows),
+        wired=wired,
+        fixed=fixed,
+        pages=_pages(facts, len(wired) + len(facts.paths), len(fixed)),
+        open_pins=_spans([one_line(row.pin) for row in rows if kind_of(row) == "open"]),
     )
     return _BEFORE_UNIT.sub(_FIXED_SPACE, page)
+
+
+def _pages(facts: SheetFacts, rows: int, fixed: int) -> int:
+    """Two pages, or three where the texts would run over the foot of the second. Tenths of a millimetre, measured."""
+    room = 2650 - 37 * rows - 30 * (2 + fixed // 2)
+    texts = (facts.order, facts.chips, facts.assumed, (*facts.open_items, *facts.not_proven))
+    lines = sum(-(-len(item) // _LETTERS_A_LINE) for items in texts for item in items)
+    spaces = sum(len(items) for items in texts)
+    needed = (30 * lines + 4 * spaces + 60 * len(texts)) // _TEXT_COLUMNS
+    return 2 if needed <= room else 3
 
 
 def _environment() -> Environment:
@@ -78,11 +88,14 @@ def _wired(row: PinRow) -> WiredPin:
 
 
 def _fixed(rows: Iterable[PinRow]) -> list[FixedPins]:
-    groups: dict[tuple[str, str, str], list[str]] = {}
+    groups: dict[str, dict[str, list[str]]] = {}
     for row in rows:
-        key = (one_line(row.function), one_line(row.level or row.meets), one_line(row.note))
-        groups.setdefault(key, []).append(one_line(row.pin))
-    return [FixedPins(function, level, _spans(pins), note) for (function, level, note), pins in groups.items()]
+        remark = "; ".join(one_line(text) for text in (row.level, row.meets, row.through, row.note) if text)
+        groups.setdefault(remark, {}).setdefault(one_line(row.function), []).append(one_line(row.pin))
+    return [
+        FixedPins(tuple((function, _spans(pins)) for function, pins in functions.items()), remark)
+        for remark, functions in groups.items()
+    ]
 
 
 def _spans(pins: list[str]) -> str:
