@@ -32,7 +32,7 @@ _SENTENCES = {
     "enable": "a row strobe came while the output buffers were off",
     "data": "the data read is not the data written",
     "data_setup": "data came too late for the processor",
-    "data_hold": "data went away before RD rose",
+    "data_hold": "data went away before the processor had taken it",
     "contention": "two drivers were on the data lines at once",
     "tRPC": "a column strobe came without its row strobe",
     "drought": "the bus went longer without a refresh request than its cycle table allows",

@@ -40,7 +40,7 @@ struct Random {
 
 // How often each check was made, the least slack it had, and what failed.
 struct Checks {
-  long count[CHECKS], failed[CHECKS], violations, derated, reference, reads;
+  long count[CHECKS], failed[CHECKS], violations, derated, reference, early, reads;
   Time slack[CHECKS];
   Time now, excuse_from, excuse_until;
   Checks() {

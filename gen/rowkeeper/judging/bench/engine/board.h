@@ -41,7 +41,7 @@ struct Board {
   int corner;
   Queue arriving, leaving;
   int64_t clock_fs, period_fs;
-  Time edge, last_edge;
+  Time edge, last_edge, row_delay;
   bool fresh;
   unsigned address;
   uint32_t outputs;
@@ -66,6 +66,7 @@ struct Board {
     for (int i = 0; i < INPUTS; i++) in_chance[i].start(seed, 100 + i);
     for (int i = 0; i <= OUTPUTS; i++) out_chance[i].start(seed, 200 + i);
     memory.data_path.start(seed, 300);
+    row_delay = out_chance[RAS].within(corner, OUT_LO[RAS], OUT_HI[RAS]);
     Random clock;
     clock.start(seed, 2);
     period_fs = at_corner == CORNER_MIN ? DEVICE_FAST_FS
@@ -111,7 +112,9 @@ struct Board {
     outputs = now;
     for (int net = 0; net < OUTPUTS; net++) {
       if (!(moved >> net & 1)) continue;
-      Time at = last_edge + out_chance[net].within(corner, OUT_LO[net], OUT_HI[net]);
+      // From one fall of the row strobe to the next, the same path adds the same delay: tRC rests on that.
+      bool row_falls = net == RAS && !(now >> RAS & 1);
+      Time at = last_edge + (row_falls ? row_delay : out_chance[net].within(corner, OUT_LO[net], OUT_HI[net]));
       if (at <= out_last[net]) at = out_last[net] + 2;
       out_last[net] = at;
       leaving.put(at, net, now >> net & 1);

@@ -21,14 +21,14 @@ struct Bus {
   bool level[LINES], released, trusted, driving, ending, pending, held;
   Time rose[LINES], fell[LINES];
   unsigned address, pending_cell, pending_value;
-  Time address_at, data_at, address_free, hold_at;
+  Time address_at, data_at, address_free, hold_at, sampled;
   long drought, resets, grants;
   bool log;
   std::vector<uint16_t> shadow;
 
   Bus(Checks &c, Memory &m, Board &b) : checks(c), memory(m), board(b), corner(0), request(FETCH), now(0), cut(FAR),
       struck(-FAR), released(true), trusted(false), driving(false), ending(false), pending(false), held(false), address(0xFFFF),
-      pending_cell(0), pending_value(0), address_at(-FAR), data_at(-FAR), address_free(-FAR), hold_at(0), drought(0),
+      pending_cell(0), pending_value(0), address_at(-FAR), data_at(-FAR), address_free(-FAR), hold_at(0), sampled(0), drought(0),
       resets(0), grants(0), log(false), shadow(WINDOW_SIZE, UNKNOWN) {
     for (int i = 0; i < LINES; i++) { level[i] = true; rose[i] = fell[i] = -FAR; }
   }
@@ -55,8 +55,8 @@ struct Bus {
     if (held && t >= hold_at) {
       held = false;
       Time gone = memory.valid_until < board.buffer_until ? memory.valid_until : board.buffer_until;
-      if (gone < hold_at) checks.least(CHECK_data_hold, gone - hold_at, ThD);
-      else checks.least(CHECK_data_hold, ThD, ThD);
+      checks.least(CHECK_data_hold, (gone < t ? gone : t) - sampled, ThD);
+      if (gone < hold_at) checks.early++;  // before RD rose, after the processor took it: a reference only
     }
   }
 
@@ -180,6 +180,7 @@ struct Bus {
     if (log) printf("event %lld read %u\n", (long long)now, got);
     held = true;
     hold_at = FAR;
+    sampled = now;
   }
 
   // --- machine cycles -----------------------------------------------------------------------------------------------

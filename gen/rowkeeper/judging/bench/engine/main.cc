@@ -6,8 +6,8 @@ static int result(const Checks &checks, const Board &board, const Bus &bus) {
   for (int i = 0; i < CHECKS; i++)
     if (checks.count[i])
       printf("check %s %ld %ld %lld\n", CHECK_NAMES[i], checks.count[i], checks.failed[i], (long long)checks.slack[i]);
-  printf("reads %ld\nchecks %ld\nviolations %ld\nderated %ld\nreference %ld\n", checks.reads, checks.total(),
-         checks.violations, checks.derated, checks.reference);
+  printf("reads %ld\nchecks %ld\nviolations %ld\nderated %ld\nreference %ld\nearly %ld\n", checks.reads,
+         checks.total(), checks.violations, checks.derated, checks.reference, checks.early);
   printf("strobes %ld\nresets %ld\ngrants %ld\nclocks %llu\nbus_ps %lld\n", bus.memory.strobes, bus.resets, bus.grants,
          (unsigned long long)board.clocks, (long long)bus.now);
   bool passed = checks.violations == 0 && checks.reads > 0;
