@@ -276,6 +276,7 @@ class ClaimOutcome:
     covered: bool | None
     spoiled_caught: bool | None
     detail: str = ""
+    trace_vcd: str = ""  # wave file of the first violation
 
 
 @dataclass(frozen=True, slots=True)

@@ -5,8 +5,11 @@ outputs (the state of the registers, in words) and `helper_...` outputs (each 1 
 make the claims inductive; they are proved together with each claim, never assumed. Must not know the claims.
 """
 
+from collections.abc import Mapping
+
 from amaranth.back import rtlil
-from amaranth.hdl import Module, Mux, Signal, Value
+from amaranth.hdl import Fragment, Module, Mux, Signal, Value
+from amaranth.lib.wiring import Component
 
 from rowkeeper.contract import Design
 from rowkeeper.logic.emit import TOP
@@ -39,10 +42,13 @@ def view_text(top: "ProbeView") -> str:
 
 
 class ProbeView(Replacement):
-    """The replacement itself, elaborated by the same code, with more outputs."""
+    """The replacement itself, elaborated by the same code, with more outputs. `parts` take the place of its own."""
 
-    def __init__(self, design: Design) -> None:
+    def __init__(self, design: Design, parts: Mapping[str, Component] | None = None) -> None:
         super().__init__(design)
+        for name, part in (parts or {}).items():
+            Fragment.get(getattr(self, name), None)  # Amaranth warns of a component that was never elaborated
+            setattr(self, name, part)
         self._values = self._registers() | {f"helper_{name}": value for name, value in self._invariants().items()}
         self.shown = [Signal(1 if name.startswith("helper") else len(value), name=name)
                       for name, value in self._values.items()]

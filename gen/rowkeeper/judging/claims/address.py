@@ -68,7 +68,7 @@ class Hit(Checker):
         " of the address that stood on the bus when the request was seen."
     )
     assertions = 4
-    spoiled = "window-open"
+    spoiled = "served-forgotten"
 
     def check(self) -> None:
         s, t = self.scene, self.scene.design.ticks

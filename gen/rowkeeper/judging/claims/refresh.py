@@ -135,7 +135,7 @@ class Merged(Checker):
         " its own; seen while both strobes are high it is served as soon as precharge allows, if the bus holds it."
     )
     assertions = 2
-    spoiled = "merged-twice"
+    spoiled = "served-forgotten"
 
     def check(self) -> None:
         s, t = self.scene, self.scene.design.ticks
@@ -240,12 +240,13 @@ class LegalBound(_Gaps):
         own = s.any_of("preparing", "refreshing")
         idle = s.any_of("idle", "resting")
         free = ready & ~waits & ~own
+        self.lemma("dry", self.dry <= b.drought_ticks + 1)
         self.lemma("free", ~free | (age <= t.standby + self.dry))
         most = b.legal_gap_ticks
         self.lemma("driven", ~(ready & (waits | own) & ~s.probe("refreshing")) | (age + rank <= most))
         self.lemma("waits_turn", ~waits | (idle & ~s.probe("served") & s.probe("refresh") & self.request.second))
         self.lemma("waits_granted", ~waits | ~s.probe("granted"))
-        self.lemma("waits_long", ~waits | (self.lasts + rank < b.request_low_ticks))
+        self.lemma("waits_long", ~waits | (self.lasts + rank <= b.request_low_ticks + t.row_setup))
 
 
 class WarmUp(Checker):

@@ -4,13 +4,13 @@ Takes an Aiger record; gives clauses of one or more ticks and the answer of z3's
 frame `f` are numbered from `f * span`. Must not know what is being claimed.
 """
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable
 
 import z3
 
 from rowkeeper.judging.proof.aiger import Aiger
 
-__all__ = ["Frames", "cone"]
+__all__ = ["Frames", "Model", "cone"]
 
 
 def cone(graph: Aiger, literals: Iterable[int]) -> tuple[frozenset[int], frozenset[int]]:
@@ -52,9 +52,15 @@ class Frames:
     def __len__(self) -> int:
         return len(self._frames)
 
+    def known(self, literal: int) -> bool:
+        """Whether a graph's literal is among what these frames are about."""
+        return self._frames[0][literal >> 1] != 0
+
     def literal(self, frame: int, literal: int) -> int:
         """A graph's literal in one frame."""
         found = self._frames[frame][literal >> 1]
+        if found == 0:
+            raise KeyError(literal)
         return -found if literal & 1 else found
 
     def tick(self) -> None:
@@ -66,18 +72,21 @@ class Frames:
         """At least one of these holds."""
         self._clause(*literals)
 
-    def solve(self, extra: Sequence[Sequence[int]] = ()) -> "z3.ModelRef | None":
+    def new(self) -> int:
+        """A literal of its own."""
+        return self._fresh()
+
+    def solve(self) -> "Model | None":
         """A model of all clauses, or None. Raises where z3 gives no answer."""
         context = z3.Context()
         solver = z3.SolverFor("QF_FD", ctx=context)
-        clauses = self._clauses + [" ".join(map(str, clause)) + " 0" for clause in extra]
-        solver.from_string(f"p cnf {self._most} {len(clauses)}\n" + "\n".join(clauses) + "\n")
+        solver.from_string(f"p cnf {self._most} {len(self._clauses)}\n" + "\n".join(self._clauses) + "\n")
         answer = solver.check()
         if answer == z3.unsat:
             return None
         if answer != z3.sat:
             raise RuntimeError(f"z3 gave no answer: {solver.reason_unknown()}")
-        return _Model(solver.model(), context)
+        return Model(solver.model(), context)
 
     def _fresh(self) -> int:
         self._most += 1
@@ -113,7 +122,7 @@ class Frames:
         return c
 
 
-class _Model:
+class Model:
     """Values of clause literals in a model."""
 
     def __init__(self, model: z3.ModelRef, context: z3.Context) -> None:

@@ -45,7 +45,7 @@ def _break(frames: Frames, asserted: Mapping[str, int], assumed: Sequence[int], 
     if model is None:
         return None
     broken = tuple(name for name, literal in asserted.items() if not model.value(frames.literal(last, literal)))
-    outputs = frames.graph.named()
+    outputs = {name: literal for name, literal in frames.graph.named().items() if frames.known(literal)}
     known = [
         {name: model.value(frames.literal(f, literal)) for name, literal in outputs.items()}
         for f in range(len(frames))
