@@ -22,6 +22,7 @@ class Checker(ABC):
     assertions: ClassVar[int]
     assumptions: ClassVar[tuple[str, ...]] = ()
     spoiled: ClassVar[str]
+    by_pdr: ClassVar[bool] = False  # no helpers: the invariant is PDR's own
 
     def __init__(self, m: Module, scene: Scene, bounds: Bounds) -> None:
         self.m = m

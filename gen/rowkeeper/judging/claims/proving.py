@@ -11,7 +11,7 @@ from dataclasses import dataclass, replace
 from rowkeeper.contract import ClaimOutcome, Status
 from rowkeeper.judging.claims.catalogue import Claim
 from rowkeeper.judging.proof.abc import pdr, search
-from rowkeeper.judging.proof.aiger import Aiger
+from rowkeeper.judging.proof.aiger import Aiger, reduced
 from rowkeeper.judging.proof.certificate import Refusal, certify
 from rowkeeper.judging.proof.graphs import ProofError, build
 from rowkeeper.judging.proof.induction import induct
@@ -89,6 +89,8 @@ def _proof(outcome: ClaimOutcome, claim: Claim, probe_rtlil: str) -> ClaimOutcom
         text = f"{built.claim_assertions} assertions in the checker, {claim.assertions} announced"
         return replace(outcome, status=Status.FAILED, detail=text)
     graph = built.graph
+    if claim.checker.by_pdr:
+        return _by_pdr(outcome, graph, claim)
     asserted, assumed = _asserted(graph), _assumed(graph)
     if induct(graph, asserted, assumed) is None:
         text = f"{len(asserted)} assertions, inductive together"
@@ -101,6 +103,7 @@ def _proof(outcome: ClaimOutcome, claim: Claim, probe_rtlil: str) -> ClaimOutcom
 
 def _by_pdr(outcome: ClaimOutcome, graph: Aiger, claim: Claim) -> ClaimOutcome:
     """The helper assertions did not carry the proof: let PDR find an invariant of its own."""
+    graph = reduced(graph, [*_claimed(graph).values(), *_assumed(graph)])
     bads, assumed = [literal ^ 1 for literal in _claimed(graph).values()], _assumed(graph)
     answer = pdr(graph, bads, assumed, _PDR_SECONDS)
     if answer.trace is not None:

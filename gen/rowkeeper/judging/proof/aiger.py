@@ -7,7 +7,7 @@ Every latch starts at 0. Must not know solvers.
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 
-__all__ = ["Aiger", "read_aiger", "write_aiger"]
+__all__ = ["Aiger", "cone", "read_aiger", "reduced", "write_aiger"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -122,3 +122,53 @@ def write_aiger(graph: Aiger, bads: Sequence[int], constraints: Iterable[int] = 
                 delta >>= 7
             body.append(delta)
     return bytes(body)
+
+
+def cone(graph: Aiger, literals: Iterable[int]) -> tuple[frozenset[int], frozenset[int]]:
+    """Gates (variables) and latches (indices) that these literals depend on, through any number of ticks."""
+    gates: set[int] = set()
+    latches: set[int] = set()
+    pending = [literal >> 1 for literal in literals]
+    while pending:
+        variable = pending.pop()
+        if variable >= graph.first_gate:
+            if variable not in gates:
+                gates.add(variable)
+                pending += [literal >> 1 for literal in graph.gates[variable - graph.first_gate]]
+        elif variable > graph.inputs:
+            index = variable - graph.inputs - 1
+            if index not in latches:
+                latches.add(index)
+                pending.append(graph.nexts[index] >> 1)
+    return frozenset(gates), frozenset(latches)
+
+
+def reduced(graph: Aiger, literals: Iterable[int]) -> Aiger:
+    """Only what these literals depend on, with every input kept and the outputs that still can be told."""
+    roots = list(literals)
+    gates, latches = cone(graph, roots)
+    number = {0: 0} | {variable: variable for variable in range(1, graph.inputs + 1)}
+    for index in sorted(latches):
+        number[graph.inputs + 1 + index] = len(number)
+    for variable in sorted(gates):
+        number[variable] = len(number)
+
+    def moved(literal: int) -> int:
+        return 2 * number[literal >> 1] + (literal & 1)
+
+    kept = [index for index, literal in enumerate(graph.outputs) if literal >> 1 in number]
+    order = sorted(latches)
+    return Aiger(
+        inputs=graph.inputs,
+        nexts=tuple(moved(graph.nexts[index]) for index in order),
+        outputs=tuple(moved(graph.outputs[index]) for index in kept),
+        bads=(),
+        constraints=(),
+        gates=tuple(
+            (moved(left), moved(right))
+            for left, right in (graph.gates[variable - graph.first_gate] for variable in sorted(gates))
+        ),
+        input_names=graph.input_names,
+        latch_names={new: graph.latch_names.get(old, "") for new, old in enumerate(order)},
+        output_names={new: graph.output_names[old] for new, old in enumerate(kept) if old in graph.output_names},
+    )

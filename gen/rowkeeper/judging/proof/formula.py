@@ -8,28 +8,9 @@ from collections.abc import Iterable
 
 import z3
 
-from rowkeeper.judging.proof.aiger import Aiger
+from rowkeeper.judging.proof.aiger import Aiger, cone
 
-__all__ = ["Frames", "Model", "cone"]
-
-
-def cone(graph: Aiger, literals: Iterable[int]) -> tuple[frozenset[int], frozenset[int]]:
-    """Gates (variables) and latches (indices) that these literals depend on, through any number of ticks."""
-    gates: set[int] = set()
-    latches: set[int] = set()
-    pending = [literal >> 1 for literal in literals]
-    while pending:
-        variable = pending.pop()
-        if variable >= graph.first_gate:
-            if variable not in gates:
-                gates.add(variable)
-                pending += [literal >> 1 for literal in graph.gates[variable - graph.first_gate]]
-        elif variable > graph.inputs:
-            index = variable - graph.inputs - 1
-            if index not in latches:
-                latches.add(index)
-                pending.append(graph.nexts[index] >> 1)
-    return frozenset(gates), frozenset(latches)
+__all__ = ["Frames", "Model"]
 
 
 class Frames:

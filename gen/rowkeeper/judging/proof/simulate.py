@@ -7,8 +7,7 @@ been replayed here. Must not know what is being claimed.
 from collections.abc import Callable, Iterable, Iterator, Mapping
 from dataclasses import replace
 
-from rowkeeper.judging.proof.aiger import Aiger
-from rowkeeper.judging.proof.formula import cone
+from rowkeeper.judging.proof.aiger import Aiger, cone
 
 __all__ = ["from_state", "replay", "state_after"]
 
