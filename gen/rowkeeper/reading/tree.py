@@ -18,7 +18,7 @@ from rowkeeper.reading.problems import Problems, quoted
 __all__ = ["Block", "Listing", "Node", "Scalar", "places_of", "read_tree"]
 
 _DEEPEST = 12
-_MOST_NODES = 50_000
+_MOST_NODES = 20_000
 _RAW_WIDTH = 200
 
 

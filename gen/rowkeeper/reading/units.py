@@ -142,25 +142,25 @@ def time_or_unlimited_ps(scalar: Scalar, problems: Problems) -> int | None:
     return None if scalar.text == "unlimited" else time_ps(scalar, problems)
 
 
-def _positive(scalar: Scalar, dimension: Dimension, problems: Problems) -> Fraction:
+def _positive(scalar: Scalar, dimension: Dimension, problems: Problems) -> Fraction | None:
     value = exact(scalar, dimension, problems)
     if value is not None and value <= 0:
         problems.add(scalar.at, f"this {dimension.name} must be above zero", f"write for example `{dimension.example}`")
-        value = None
-    return Fraction(1) if value is None else value
+        return None
+    return value
 
 
 def frequency_hz(scalar: Scalar, problems: Problems) -> Fraction:
     """A frequency above zero, as an exact fraction of hertz."""
-    return _positive(scalar, FREQUENCY, problems)
+    return _positive(scalar, FREQUENCY, problems) or Fraction(1)
 
 
 def share(scalar: Scalar, problems: Problems) -> Fraction:
     """A share above 0 % and below 100 %, as a fraction of one."""
     value = _positive(scalar, SHARE, problems)
-    if value >= 1 and scalar.text.strip() != "1":
+    if value is not None and value >= 1:
         problems.add(scalar.at, "this share must be below 100 %", "write for example `48 %`")
-    return value
+    return value or Fraction(1, 2)
 
 
 def parts_per_million(scalar: Scalar, problems: Problems) -> Fraction:
