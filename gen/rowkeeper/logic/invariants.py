@@ -50,8 +50,9 @@ class ProbeView(Replacement):
             Fragment.get(getattr(self, name), None)  # Amaranth warns of a component that was never elaborated
             setattr(self, name, part)
         self._values = self._registers() | {f"helper_{name}": value for name, value in self._invariants().items()}
-        self.shown = [Signal(1 if name.startswith("helper") else len(value), name=name)
-                      for name, value in self._values.items()]
+        self.shown = [
+            Signal(1 if name.startswith("helper") else len(value), name=name) for name, value in self._values.items()
+        ]
 
     def elaborate(self, platform: object) -> Module:
         m = super().elaborate(platform)

@@ -7,15 +7,17 @@ assertions are inductive together, or PDR's invariant is re-checked. Nothing tha
 from collections.abc import Callable, Mapping, Sequence
 from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass, replace
+from typing import Literal
 
-from rowkeeper.contract import ClaimOutcome, Status
+from rowkeeper.contract import ClaimOutcome, Design, Status
 from rowkeeper.judging.claims.catalogue import Claim
 from rowkeeper.judging.proof.abc import pdr, search
 from rowkeeper.judging.proof.aiger import Aiger, reduced
-from rowkeeper.judging.proof.certificate import Refusal, certify
+from rowkeeper.judging.proof.certificate import CertificateError, certify
+from rowkeeper.judging.proof.equality import Equality, equal
 from rowkeeper.judging.proof.graphs import ProofError, build
 from rowkeeper.judging.proof.induction import induct
-from rowkeeper.judging.proof.simulate import from_state, replay, state_after
+from rowkeeper.judging.proof.simulate import from_state, idle_row, replay, state_after
 from rowkeeper.judging.proof.trace import vcd_text
 from rowkeeper.tools import TimedOut, ToolMissing
 
@@ -45,19 +47,64 @@ class _Trace:
 def prove_all(
     claims: Sequence[Claim],
     probe_rtlil: str,
+    subjects: Mapping[Literal["logic", "netlist"], str],
     short: ShortTexts | None,
     progress: Callable[[str], None],
     jobs: int = 2,
 ) -> tuple[ClaimOutcome, ...]:
-    """Every claim, `jobs` at a time, outcomes in the order of the claims."""
+    """Every claim on every subject, `jobs` at a time; outcomes in the order of subjects, then claims.
 
-    def one(claim: Claim) -> ClaimOutcome:
-        outcome = prove(claim, probe_rtlil, short)
-        progress(f"claim {claim.name}: {outcome.status.value}")
-        return outcome
-
+    The claims are proved on the probe view. They hold for a subject because its outputs equal those of the probe view
+    in every tick, which is one more proof per subject, with a certificate of its own.
+    """
+    names = sorted(subjects)
+    design = claims[0].design
     with ThreadPoolExecutor(max_workers=jobs) as pool:
-        return tuple(pool.map(one, claims))
+        equalities = [pool.submit(_equality, probe_rtlil, subjects[name], design) for name in names]
+        proofs = [pool.submit(_told, claim, probe_rtlil, short, progress) for claim in claims]
+        outcomes = [proof.result() for proof in proofs]
+        found = []
+        for name, waiting in zip(names, equalities, strict=True):
+            equality = waiting.result()
+            progress(f"{name} equals what the claims are proved on: {equality.status.value}")
+            found += [_same(name, equality), *(_transferred(outcome, name, equality) for outcome in outcomes)]
+        return tuple(found)
+
+
+def _told(claim: Claim, probe_rtlil: str, short: ShortTexts | None, progress: Callable[[str], None]) -> ClaimOutcome:
+    outcome = prove(claim, probe_rtlil, short)
+    progress(f"claim {claim.name}: {outcome.status.value}")
+    return outcome
+
+
+def _equality(probe_rtlil: str, subject_rtlil: str, design: Design) -> Equality:
+    try:
+        return equal(probe_rtlil, subject_rtlil, _late_ticks(design))
+    except (ProofError, ToolMissing, TimedOut) as error:
+        return Equality(Status.NOT_RUN, 0, 0, str(error))
+
+
+def _same(subject: Literal["logic", "netlist"], equality: Equality) -> ClaimOutcome:
+    return ClaimOutcome(
+        claim="same",
+        sentence=f"The {subject} has the outputs of the logic that the claims are proved on, whatever comes in.",
+        subject=subject,
+        status=equality.status,
+        assertions=equality.outputs,
+        assumptions=(),
+        certificate=equality.certificate,
+        covered=None,
+        spoiled_caught=None,
+        detail=equality.detail,
+        trace_vcd=equality.trace_vcd,
+    )
+
+
+def _transferred(outcome: ClaimOutcome, subject: Literal["logic", "netlist"], equality: Equality) -> ClaimOutcome:
+    """A claim holds for a subject only with its equality."""
+    if outcome.status is not Status.PASSED or equality.status is Status.PASSED:
+        return replace(outcome, subject=subject)
+    return replace(outcome, subject=subject, status=equality.status, detail=f"not transferred: {equality.detail}")
 
 
 def prove(claim: Claim, probe_rtlil: str, short: ShortTexts | None = None) -> ClaimOutcome:
@@ -114,7 +161,7 @@ def _by_pdr(outcome: ClaimOutcome, graph: Aiger, claim: Claim) -> ClaimOutcome:
         return replace(outcome, status=Status.NOT_RUN, detail="neither proved nor refuted in the time given")
     try:
         clauses = certify(graph, answer.invariant, bads, assumed)
-    except Refusal as refusal:
+    except CertificateError as refusal:
         return replace(outcome, status=Status.NOT_RUN, detail=f"the invariant was refused: {refusal}")
     return replace(outcome, status=Status.PASSED, certificate=clauses, detail=f"invariant of {clauses} clauses")
 
@@ -122,7 +169,9 @@ def _by_pdr(outcome: ClaimOutcome, graph: Aiger, claim: Claim) -> ClaimOutcome:
 def _guards(outcome: ClaimOutcome, claim: Claim, short: ShortTexts) -> ClaimOutcome:
     """Cover and spoiled design, on the short design."""
     built = build(short.probe_rtlil, claim.harness(short.probe_rtlil))
-    cover = search(built.graph, [built.graph.output("cover_seen")], _assumed(built.graph), _SEARCH_TICKS, _SEARCH_SECONDS)
+    cover = search(
+        built.graph, [built.graph.output("cover_seen")], _assumed(built.graph), _SEARCH_TICKS, _SEARCH_SECONDS
+    )
     covered = cover.trace is not None and _reaches(built.graph, cover.trace, "cover_seen")
     spoiled = short.spoiled[claim.spoiled]
     caught = _search(build(spoiled, claim.harness(spoiled)).graph, claim.name, _SEARCH_TICKS)
@@ -156,10 +205,8 @@ def _search(graph: Aiger, name: str, ticks: int) -> _Trace | None:
 
 def _refute(graph: Aiger, claim: Claim) -> _Trace | None:
     """A trace after the warm-up and from late ages: these lie too deep for a search from the start."""
-    t = claim.design.ticks
-    warm = t.pause + (t.warm_up_cycles + 1) * (t.refresh_low + t.rest + t.row_setup)
-    idle = _idle_row(graph)
-    for ticks in (0, warm, warm + t.standby, warm + t.forced - t.row_end):
+    idle = idle_row(graph)
+    for ticks in (0, *_late_ticks(claim.design)):
         start = from_state(graph, state_after(graph, idle, ticks))
         bads = [literal ^ 1 for literal in _claimed(start).values()]
         answer = search(start, bads, _assumed(start), _SEARCH_TICKS, _SEARCH_SECONDS // 4)
@@ -170,10 +217,11 @@ def _refute(graph: Aiger, claim: Claim) -> _Trace | None:
     return None
 
 
-def _idle_row(graph: Aiger) -> str:
-    """Inputs of a bus at rest: every line high, no address."""
-    names = [graph.input_names.get(index, "") for index in range(graph.inputs)]
-    return "".join("1" if name.endswith("_n") and not name.startswith("late_") else "0" for name in names)
+def _late_ticks(design: Design) -> tuple[int, ...]:
+    """After the warm-up, and shortly before a refresh of our own becomes wanted and forced."""
+    t = design.ticks
+    warm = t.pause + (t.warm_up_cycles + 1) * (t.refresh_low + t.rest + t.row_setup)
+    return warm, warm + t.standby, warm + t.forced - t.row_end
 
 
 def _replayed(graph: Aiger, trace: Sequence[str], name: str, before: int = 0) -> _Trace | None:

@@ -253,9 +253,7 @@ class WarmUp(Checker):
     """Nothing before the memory is awake."""
 
     name = "warm-up"
-    sentence = (
-        "No strobe falls before the pause is over, and no column strobe before the warm-up refreshes have ended."
-    )
+    sentence = "No strobe falls before the pause is over, and no column strobe before the warm-up refreshes have ended."
     assertions = 3
     spoiled = "warm-up-skipped"
 

@@ -106,7 +106,9 @@ class Precharge(_Timed):
     """Rest between strobes."""
 
     name = "precharge"
-    sentence = "The row strobe is high for its precharge ticks before it falls again, and the column strobe for its own."
+    sentence = (
+        "The row strobe is high for its precharge ticks before it falls again, and the column strobe for its own."
+    )
     assertions = 3
     spoiled = "precharge-short"
 
@@ -193,7 +195,8 @@ class DataBuffer(_Timed):
 
     name = "data-buffer"
     sentence = (
-        "The data buffer drives the bus exactly beside the column strobe of a read that the bus asked for in our window."
+        "The data buffer drives the bus exactly beside the column strobe of a read that the bus asked for in our"
+        " window."
     )
     assertions = 5
     spoiled = "buffer-always"

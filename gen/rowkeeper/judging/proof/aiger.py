@@ -1,4 +1,4 @@
-"""And-inverter graphs in the AIGER format (Biere, Heljanko, Wieringa, FMV report 11/2, 2011), binary or ASCII header `aig`.
+"""And-inverter graphs in the binary AIGER format (Biere, Heljanko, Wieringa: FMV report 11/2, 2011).
 
 Takes the bytes of a binary AIGER file with a symbol table; gives records, and bytes again for the parts asked for.
 Every latch starts at 0. Must not know solvers.

@@ -1,6 +1,6 @@
 """The re-check of an invariant that another engine found: start, step, safe, by z3, on the graph itself.
 
-Takes a graph and the text of a clauses file; gives the number of clauses, or a Refusal. The header decides first:
+Takes a graph and the text of a clauses file; gives the number of clauses, or a refusal. The header decides first:
 `# Inductive invariant` is one, `# Clauses of the last timeframe` is not. Must not know what is being claimed.
 """
 
@@ -9,36 +9,36 @@ from collections.abc import Sequence
 from rowkeeper.judging.proof.aiger import Aiger
 from rowkeeper.judging.proof.formula import Frames
 
-__all__ = ["Refusal", "certify"]
+__all__ = ["CertificateError", "certify"]
 
 _HEADER = "# Inductive invariant"
 
 
-class Refusal(Exception):
+class CertificateError(Exception):
     """Why an invariant proves nothing."""
 
 
 def certify(graph: Aiger, invariant: str, bads: Sequence[int], constraints: Sequence[int]) -> int:
     """Clauses of an invariant that holds at the start, is kept by every tick and excludes the bad states."""
     if not invariant.startswith(_HEADER):
-        raise Refusal(f"the file begins with {invariant.partition(chr(10))[0]!r}, which is no invariant")
+        raise CertificateError(f"the file begins with {invariant.partition(chr(10))[0]!r}, which is no invariant")
     clauses = _clauses(graph, invariant)
     roots = [*bads, *constraints, *(literal for clause in clauses for literal in clause)]
     start = Frames(graph, roots, from_start=True)
     _exclude(start, 0, clauses)
     if start.solve() is not None:
-        raise Refusal("the invariant does not hold at the start")
+        raise CertificateError("the invariant does not hold at the start")
     step = Frames(graph, roots)
     _include(step, clauses, constraints)
     step.tick()
     _exclude(step, 1, clauses)
     if step.solve() is not None:
-        raise Refusal("a tick leads out of the invariant")
+        raise CertificateError("a tick leads out of the invariant")
     safe = Frames(graph, roots)
     _include(safe, clauses, constraints)
     safe.require(*(safe.literal(0, bad) for bad in bads))
     if safe.solve() is not None:
-        raise Refusal("the invariant holds a bad state")
+        raise CertificateError("the invariant holds a bad state")
     return len(clauses)
 
 
@@ -75,20 +75,20 @@ def _clauses(graph: Aiger, invariant: str) -> list[list[int]]:
             if clause is not None:
                 clauses.append(clause)
     if not clauses and ".ilb" not in invariant:
-        raise Refusal("the invariant names no latches")
+        raise CertificateError("the invariant names no latches")
     return clauses
 
 
 def _latch(name: str) -> int:
     digits = name.lstrip("lo")
     if not digits.isdigit():
-        raise Refusal(f"unknown latch {name!r} in the invariant")
+        raise CertificateError(f"unknown latch {name!r} in the invariant")
     return int(digits)
 
 
 def _clause(graph: Aiger, columns: Sequence[int], cube: str) -> list[int] | None:
     if len(columns) != len(cube):
-        raise Refusal("a line of the invariant has the wrong length")
+        raise CertificateError("a line of the invariant has the wrong length")
     clause = []
     for index, bit in zip(columns, cube, strict=True):
         if index == graph.latches:
@@ -96,7 +96,7 @@ def _clause(graph: Aiger, columns: Sequence[int], cube: str) -> list[int] | None
                 return None  # satisfied: that latch is 0 on legal runs
             continue
         if index > graph.latches:
-            raise Refusal(f"latch {index} is not in the graph")
+            raise CertificateError(f"latch {index} is not in the graph")
         if bit != "-":
             clause.append(2 * (graph.inputs + 1 + index) + (bit == "1"))
     return clause

@@ -47,7 +47,6 @@ def _break(frames: Frames, asserted: Mapping[str, int], assumed: Sequence[int], 
     broken = tuple(name for name, literal in asserted.items() if not model.value(frames.literal(last, literal)))
     outputs = {name: literal for name, literal in frames.graph.named().items() if frames.known(literal)}
     known = [
-        {name: model.value(frames.literal(f, literal)) for name, literal in outputs.items()}
-        for f in range(len(frames))
+        {name: model.value(frames.literal(f, literal)) for name, literal in outputs.items()} for f in range(len(frames))
     ]
     return Step(where, broken, tuple(known))

@@ -9,7 +9,7 @@ from dataclasses import replace
 
 from rowkeeper.judging.proof.aiger import Aiger, cone
 
-__all__ = ["from_state", "replay", "state_after"]
+__all__ = ["from_state", "idle_row", "replay", "state_after"]
 
 _CHUNK = 500
 
@@ -22,6 +22,12 @@ def replay(graph: Aiger, trace: Iterable[str]) -> Iterator[Mapping[str, bool]]:
     for row in trace:
         state, values = step(state, [int(bit) for bit in row])
         yield {name: bool(value) for name, value in zip(named, values, strict=True)}
+
+
+def idle_row(graph: Aiger) -> str:
+    """Inputs of a bus at rest: every active-low line high, everything else 0. A miter calls its inputs `in_...`."""
+    names = [graph.input_names.get(index, "") for index in range(graph.inputs)]
+    return "".join("1" if name.endswith("_n") and not name.startswith("late_") else "0" for name in names)
 
 
 def state_after(graph: Aiger, row: str, ticks: int) -> list[int]:
@@ -65,7 +71,7 @@ def _compiled(graph: Aiger, watched: tuple[int, ...]) -> _Step:
             left, right = graph.gates[variable - graph.first_gate]
             lines.append(f" v[{variable}] = {_term(left)} & {_term(right)}")
         scope: dict[str, Callable[[list[int]], None]] = {}
-        exec("\n".join(lines), scope)  # noqa: S102  # text built from integers only
+        exec("\n".join(lines), scope)  # text built from integers only
         pieces.append(scope["piece"])
     span = graph.first_gate + len(graph.gates)
 
