@@ -15,15 +15,9 @@ TICKS = TickTable("counted", 4, 4, 6, 12, 1, 60, 900, 3, 17, 12, 600, 1480, 79, 
 DESIGN = Design("loom", 7, 7, 7, 16, 2, 3, True, True, True, True, TICKS)
 PORTS = ports_of(DESIGN)
 
-_LINES = dict(
-    zip(
-        ("mreq_n", "m1_n", "rd_n", "wr_n", "busreq_n", "busack_n", "reset_n"),
-        ["1", "2", "3", "4", "7", "8", "9"],
-        strict=True,
-    )
-)
+_LINES = {"mreq_n": "1", "m1_n": "2", "rd_n": "3", "wr_n": "4", "busreq_n": "7", "busack_n": "8", "reset_n": "9"}
 _ADDRESS = ["78", "79", "80", "81", "82", "83", "85", "86", "87", "91", "93", "94", "95", "96", "97", "99"]
-_STROBES = dict(zip(("ras_n", "cas_n", "we_n", "read_n", "enable_n"), ["51", "52", "53", "54", "56"], strict=True))
+_STROBES = {"ras_n": "51", "cas_n": "52", "we_n": "53", "read_n": "54", "enable_n": "56"}
 _MEMORY = ["57", "59", "60", "64", "65", "66", "68", "69"]
 
 PINS = (

@@ -19,7 +19,7 @@ __all__ = ["Refusal", "constraint_text", "constraints_of", "megahertz", "read_ba
 
 _CLOCK = "clk"
 _PLAIN_NAME = re.compile(r"[a-z][a-z0-9_]*")
-_NO_PULL_UP_BANK = "3"  # iCE40 HX: the left bank's pads have no pull-up to switch on (from memory)
+_NO_PULL_UP_BANK = "3"  # the pad cell's own text: its PULLUP is for banks 0, 1 and 2, ignored in bank 3 (a copy)
 _WORDS = {
     "supply": "a supply pin",
     "ground": "a ground pin",

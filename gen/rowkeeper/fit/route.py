@@ -25,12 +25,13 @@ class DoesNotFitError(Exception):
 
 @dataclass(frozen=True, slots=True)
 class Routed:
-    """One run of the router. `fmax_mhz` is exactly what it reported."""
+    """One run of the router. `fmax_mhz` is exactly what it reported; `report` is the whole of its report, as JSON."""
 
     seed: int
     netlist: bytes
     delay_file: str
     placed: str
+    report: bytes
     cells_used: int
     cells_total: int
     fmax_mhz: Fraction
@@ -53,6 +54,7 @@ def route(netlist: bytes, constraint_text: str, device: Device, clock_mhz: str, 
         netlist=run.files["routed.json"],
         delay_file=run.files["delays.sdf"].decode(),
         placed=run.files["routed.asc"].decode(),
+        report=run.files["report.json"],
         cells_used=int(cells["used"]),
         cells_total=int(cells["available"]),
         fmax_mhz=_fmax(report["fmax"]),

@@ -1,18 +1,17 @@
 """The router's delay file: every arc of the placed and routed design, in exact picoseconds.
 
-Takes the text of an SDF file as the router writes it; gives arcs, set-up figures and cell kinds. Must not know which
+Takes the text of an SDF file as the router writes it; gives arcs and set-up figures. Must not know which
 arc is a pin or a register of the logic.
 """
 
 import re
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator
 from dataclasses import dataclass
 from decimal import ROUND_CEILING, ROUND_FLOOR, Decimal
 
 __all__ = ["Arc", "DelayFile", "SdfError", "SetUp", "read_sdf"]
 
 _TRIPLE = r"\((-?[\d.]+):(-?[\d.]+):(-?[\d.]+)\)"
-_CELL_KIND = re.compile(r'\(CELLTYPE "(.*)"\)')
 _INSTANCE = re.compile(r"\(INSTANCE ?(.*)\)")
 _WIRE = re.compile(rf"\(INTERCONNECT (\S+) (\S+) {_TRIPLE} {_TRIPLE}\)")
 _THROUGH = re.compile(rf"\(IOPATH (\S+) (\S+) {_TRIPLE} {_TRIPLE}\)")
@@ -44,22 +43,19 @@ class SetUp:
 
 @dataclass(frozen=True, slots=True)
 class DelayFile:
-    """Arcs of wires, arcs through cells, set-up figures, and the kind of each cell."""
+    """Arcs of wires, arcs through cells, and set-up figures."""
 
     wires: tuple[Arc, ...]
     through: tuple[Arc, ...]
     set_ups: tuple[SetUp, ...]
-    kinds: Mapping[str, str]
 
 
 def read_sdf(text: str) -> DelayFile:
     """Read every arc; a line that speaks of a delay and is not understood is an error, never skipped."""
     if "(TIMESCALE 1ps)" not in text:
         raise SdfError("the delay file is not in picoseconds")
-    wires, through, set_ups, kinds = [], [], [], {}
-    for kind, cell, line in _lines(text):
-        if cell:
-            kinds[cell] = kind
+    wires, through, set_ups = [], [], []
+    for cell, line in _lines(text):
         if match := _WIRE.fullmatch(line):
             wires.append(Arc(_plain(match[1]), _plain(match[2]), *_span(match.groups()[2:])))
         elif match := _THROUGH.fullmatch(line):
@@ -68,18 +64,16 @@ def read_sdf(text: str) -> DelayFile:
             set_ups.append(SetUp(f"{cell}/{match[1]}", f"{cell}/{match[2]}", _span(match.groups()[2:5])[1]))
         elif re.match(r"\((INTERCONNECT|IOPATH|SETUPHOLD|SETUP|HOLD|RECREM|WIDTH|PORT|DEVICE)\b", line):
             raise SdfError(f"not understood in the delay file: {line}")
-    return DelayFile(tuple(wires), tuple(through), tuple(set_ups), kinds)
+    return DelayFile(tuple(wires), tuple(through), tuple(set_ups))
 
 
-def _lines(text: str) -> Iterator[tuple[str, str, str]]:
-    """Each line together with the cell kind and the instance it belongs to."""
-    kind = cell = ""
+def _lines(text: str) -> Iterator[tuple[str, str]]:
+    """Each line together with the instance it belongs to."""
+    cell = ""
     for line in map(str.strip, text.splitlines()):
-        if match := _CELL_KIND.fullmatch(line):
-            kind = match[1]
-        elif match := _INSTANCE.fullmatch(line):
+        if match := _INSTANCE.fullmatch(line):
             cell = _plain(match[1].strip())
-        yield kind, cell, line
+        yield cell, line
 
 
 def _plain(name: str) -> str:
