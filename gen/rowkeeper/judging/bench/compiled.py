@@ -5,16 +5,14 @@ Takes a board, a design, RTLIL text and net windows; gives outcomes. Must not kn
 
 from collections.abc import Mapping
 from dataclasses import dataclass
-from functools import cache
 from pathlib import Path
 from typing import Literal
-
-from jinja2 import Environment, FileSystemLoader, StrictUndefined
 
 from rowkeeper.contract import BenchOutcome, Design
 from rowkeeper.judging.bench.outcome import Report, not_run, outcome_of, read_report
 from rowkeeper.judging.bench.parameters import CHECKS, INPUT_LINES, OUTPUT_LINES, Parameters, parameters_of
 from rowkeeper.judging.bench.scenario import Scenario
+from rowkeeper.judging.bench.templating import fill_in
 from rowkeeper.reading.board import Board
 from rowkeeper.reading.figures import Window
 from rowkeeper.tools import TimedOut, ToolMissing, run_tool, share_folder
@@ -113,15 +111,9 @@ def _logic_text(rtlil: str) -> str:
     return text
 
 
-@cache
-def _templates() -> Environment:
-    folder = FileSystemLoader(_HERE / "templates")
-    return Environment(loader=folder, undefined=StrictUndefined, autoescape=False, keep_trailing_newline=True)
-
-
 def parameters_text(parameters: Parameters) -> str:
     """The header with every number of the bench."""
-    return _templates().get_template("parameters.h.j2").render(parameters=parameters, checks=CHECKS)
+    return fill_in("parameters.h.j2", parameters=parameters, checks=CHECKS)
 
 
 def ports_text(parameters: Parameters, logic: str) -> str:
@@ -132,15 +124,12 @@ def ports_text(parameters: Parameters, logic: str) -> str:
         if line in parameters.lines
     ]
     outputs = [{"number": number, "mangled": _value(name, logic)} for number, name in enumerate(OUTPUT_LINES)]
-    return (
-        _templates()
-        .get_template("ports.h.j2")
-        .render(lines=lines, outputs=outputs, memory_address=_value("ma", logic))
-    )
+    return fill_in("ports.h.j2", lines=lines, outputs=outputs, memory_address=_value("ma", logic))
 
 
 def _value(port: str, logic: str) -> str:
     """An output is a plain value, or a register whose present value is meant."""
     mangled = f"p_{port.replace('_', '__')}"
-    register = f"> {mangled};" in logic and f"/*output*/ wire<" in logic.split(f" {mangled};")[0].rsplit("\n", 1)[-1]
+    declared = next((line for line in logic.splitlines() if line.rstrip().endswith(f" {mangled};")), "")
+    register = "wire<" in declared
     return f"top.{mangled}.{'curr.' if register else ''}data[0]"

@@ -14,6 +14,7 @@ from rowkeeper.reading.figures import Window
 
 __all__ = [
     "CHECKS",
+    "DELAYS",
     "INPUT_LINES",
     "NO_LIMIT",
     "OUTPUT_LINES",
@@ -49,6 +50,7 @@ _DELAYS = (
     *("TdCr(IORQf)", "TdCf(IORQf)", "TdCr(IORQr)", "TdCf(IORQr)", "TdCf(D)", "TdCr(Dz)", "TdCr(CTz)"),
     *("TdCr(BUSACKf)", "TdCf(BUSACKr)"),
 )
+DELAYS = tuple(symbol.replace("(", "_").replace(")", "") for symbol in _DELAYS)
 _SEPARATIONS = ("TdA(MREQf)", "TwMREQl", "TwMREQh", "TdCTr(A)", "TwWR", "TdD(WRf)", "TdWRr(D)")
 _NEEDS = ("TsD(Cr)", "TsD(Cf)", "ThD", "TsBUSREQ", "TsRESET")
 
@@ -246,4 +248,5 @@ def _lengths(board: Board, design: Design) -> list[tuple[str, int]]:
         ("FEW_GRANTS", 12),
         ("MIX", 20_000),
         ("FEW_MIX", 400),
+        ("TIME_OUT_PS", 60 * _PS),
     ]

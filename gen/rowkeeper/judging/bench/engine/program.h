@@ -108,7 +108,7 @@ struct Program {
     else if (kind < 7) { bus.read(a, 4); bus.write(a, chance.next() & 0xFF, 3); }
     else if (kind == 7) { bus.read(a, 3); bus.read(b, 4); bus.write(b, chance.next() & 0xFF, 3); bus.write(a, chance.next() & 0xFF, 3); }
     else if (kind == 8) bus.input(chance.next() & ADDRESS_MASK);
-    else if (kind == 9) bus.output(chance.next() & ADDRESS_MASK, chance.next() & 0xFF);
+    else if (kind == 9) bus.output(chance.next() & ADDRESS_MASK, a & 0xFF);
     else if (kind == 10) bus.acknowledge(next_code(), 7);
     else bus.idle(1 + (int)chance.below(9));
   }
