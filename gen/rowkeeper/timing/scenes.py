@@ -1,0 +1,329 @@
+"""Scenes: one cycle of the bus and the one that follows, with everything the device and the chip make of them.
+
+Takes `Facts`; gives networks, one per cycle, neighbour, number of waits and case. Where the device acts at the later
+of two causes, each cause that can be the later one is a case of its own; a cause that never can is left out. Must
+not know limits.
+"""
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+from rowkeeper.reading.board import Chip
+from rowkeeper.timing.bus import CYCLES, FOLLOWERS, BusCycles, CycleKind, request_clock
+from rowkeeper.timing.device import SYNCHRONISER, Facts, counted, drive, sample, skewed
+from rowkeeper.timing.network import SAME, Bound, Network, Promise
+from rowkeeper.timing.bus import from_figure
+from rowkeeper.timing.paths import part_of, travel
+
+__all__ = ["Scene", "chips_of", "scenes"]
+
+_SPARE_CLOCKS = 3
+
+
+@dataclass(frozen=True, slots=True)
+class Scene:
+    """`within`: limits inside the first cycle are judged here too, and not only those between the two cycles.
+
+    `conditions`: bounds that must not be below 0, or the case cannot happen.
+    """
+
+    network: Network
+    chip: Chip
+    cycle: str
+    neighbour: str
+    case: str
+    within: bool
+    conditions: tuple[Bound, ...] = ()
+
+
+def chips_of(facts: Facts) -> tuple[Chip, ...]:
+    """The types of chip on the board, each once."""
+    return tuple({bank.chip.name: bank.chip for bank in facts.board.banks}.values())
+
+
+def scenes(facts: Facts) -> Iterator[Scene]:
+    """Every scene that can happen."""
+    for chip in chips_of(facts):
+        yield _whatever(facts, chip)
+        yield _own_refreshes(facts, chip)
+        for kind in CYCLES:
+            for follower in FOLLOWERS[kind]:
+                for waits in _waits(facts, kind):
+                    yield from _pair(facts, chip, kind, follower, waits)
+
+
+def _waits(facts: Facts, kind: CycleKind) -> tuple[int, ...]:
+    """No wait, and as many as the board's longest wait can make."""
+    longest = -(-facts.board.at_worst.wait_max_ps // facts.clock.period_lo_ps)
+    return (0, longest) if longest and kind != "refresh" else (0,)
+
+
+# --- one pair of cycles ------------------------------------------------------------------------------------------
+
+
+def _pair(facts: Facts, chip: Chip, kind: CycleKind, follower: CycleKind, waits: int) -> Iterator[Scene]:
+    network = Network()
+    bus = BusCycles(network, facts.board.grade, facts.clock, facts.clock_source)
+    second = request_clock(kind, waits)
+    bus.clocks(second + _SPARE_CLOCKS)
+    bus.begin(kind, 1)
+    bus.finish(kind, 1, waits)
+    bus.begin(follower, second, "next ")
+    bus.between()
+    _requests(network, facts)
+    _next_cycle(network, facts, follower, second)
+    within = follower == FOLLOWERS[kind][0]
+    note = f"{waits} waits" if waits else ""
+    scene = Scene(network, chip, kind, follower, note, within)
+    if kind == "interrupt acknowledge":
+        yield scene
+    elif kind == "refresh":
+        _refresh(network, facts, "")
+        _follow(network, facts, "row rises")
+        yield scene
+    else:
+        yield from _access(scene, facts, kind)
+
+
+def _requests(network: Network, facts: Facts) -> None:
+    """When the device sees the lines of both cycles."""
+    lines = (("MREQf", "mreq_n"), ("MREQr", "mreq_n"), ("RDf", "rd_n"), ("RDr", "rd_n"), ("WRf", "wr_n"))
+    lines += (("M1f", "m1_n"), ("M1r", "m1_n"), ("next MREQf", "mreq_n"), ("next M1f", "m1_n"))
+    for event, net in lines:
+        if network.holds(event):
+            sample(network, facts, net, event, f"{event} seen")
+    for event in ("A", "A ends", "next A"):
+        if network.holds(event):
+            travel(network, event, f"{event} arrives", facts.paths["a"])
+    for prefix in ("", "next "):
+        if network.holds(f"{prefix}MREQf seen"):
+            network.promise(f"{prefix}MREQf seen", f"{prefix}on time", counted(facts, plus=SYNCHRONISER))
+
+
+def _refresh(network: Network, facts: Facts, prefix: str) -> None:
+    """A refresh: the row goes out at once, the row strobe follows after `row_setup`."""
+    if not prefix:
+        network.promise("on time", "turn", SAME)
+    span = counted(facts, "row_setup")
+    network.promise(f"{prefix}turn", f"{prefix}row falls", span)
+    drive(network, facts, "ras_n", f"{prefix}row falls", f"{prefix}RASf")
+    if prefix:
+        return
+    drive(network, facts, "ma", "turn", "row address")
+    network.promise("row falls", "row rises", counted(facts, "refresh_low"))
+    drive(network, facts, "ras_n", "row rises", "RASr")
+    network.promise("row rises", "address released", counted(facts, plus=1, at_least=True))
+    drive(network, facts, "ma", "address released", "row address ends")
+
+
+def _access(scene: Scene, facts: Facts, kind: CycleKind) -> Iterator[Scene]:
+    """Row strobe on time, column select, then the cases of the column strobe and of its end."""
+    network = scene.network
+    write = kind == "memory write"
+    network.promise("on time", "row falls", SAME)
+    drive(network, facts, "ras_n", "row falls", "RASf")
+    _row(network, facts)
+    network.promise("row falls", "column selected", counted(facts, "mux"))
+    drive(network, facts, "ma", "column selected", "column address")
+    drive(network, facts, "ma", "column selected", "row address ends")
+    network.promise("row falls", "earliest column", counted(facts, "column"))
+    network.promise("row falls", "given up", counted(facts, "give_up"))
+    strobe = "WRf" if write else "RDf"
+    network.promise(f"{strobe} seen", "strobe known", counted(facts, plus=SYNCHRONISER))
+    for case in _later(scene, facts, "earliest column", "strobe known", ("column by tick", f"column by {strobe[:2]}")):
+        _column(case, facts, write)
+        ends = (("row hold", "row held on"), ("MREQ", "request over"))
+        for last in _later(case, facts, ends[0][1], ends[1][1], ("ended by row hold", "ended by MREQ"), "column rises"):
+            _end(last.network, facts, write)
+            _follow(last.network, facts, "column rises")
+            _data(last.network, facts, scene.chip, write)
+            yield last
+
+
+def _row(network: Network, facts: Facts) -> None:
+    """The row goes out with the first clock edge after the address has come, and no later than MREQ is first seen.
+
+    That the address outputs are free by then is a limit between the cycle before and this one.
+    """
+    nothing = Promise("no later than MREQ is first seen", 0, None, facts.tick_source)
+    edge = Promise("to the next device clock edge", 0, facts.tick_hi_ps, facts.tick_source)
+    network.promise("row goes out", "MREQf seen", nothing)
+    network.promise("A arrives", "row goes out", edge)
+    drive(network, facts, "ma", "row goes out", "row address")
+
+
+def _later(
+    scene: Scene, facts: Facts, one: str, other: str, words: tuple[str, str], event: str = "go"
+) -> Iterator[Scene]:
+    """`event` happens at the later of two clock edges: a case for each that can be the later one."""
+    network = scene.network
+    ahead = network.latest(one, other)
+    behind = network.earliest(one, other)
+    tick = counted(facts, plus=1, at_least=True)
+    if behind is None or behind.total_ps <= 0:
+        first = network.copy()
+        first.promise(one, event, SAME)
+        first.promise(other, one, Promise(f"{words[0]}", 0, None, facts.tick_source))
+        yield _case(scene, first, words[0], behind and _negative(behind))
+    if ahead is None or ahead.total_ps >= (tick.lo_ps or 0):
+        second = network.copy()
+        second.promise(other, event, SAME)
+        second.promise(one, other, tick)
+        yield _case(scene, second, words[1], ahead)
+
+
+def _negative(bound: Bound) -> Bound:
+    return Bound(-bound.total_ps, (), {name: -ps for name, ps in bound.per_tick.items()})
+
+
+def _case(scene: Scene, network: Network, words: str, condition: Bound | None) -> Scene:
+    case = ", ".join(part for part in (scene.case, words) if part)
+    conditions = scene.conditions + ((condition,) if condition is not None else ())
+    return Scene(network, scene.chip, scene.cycle, scene.neighbour, case, scene.within, conditions)
+
+
+def _column(scene: Scene, facts: Facts, write: bool) -> None:
+    """From `go`: write enable and column strobe, then the early end of the row strobe."""
+    network = scene.network
+    by_tick = "by tick" in scene.case
+    if write:
+        lead = counted(facts, "write_lead")
+        network.promise("go", "write falls", SAME)
+        network.promise("write falls", "column falls", lead)
+        drive(network, facts, "we_n", "write falls", "WEf")
+    else:
+        network.promise("go", "column falls", SAME)
+    drive(network, facts, "cas_n", "column falls", "CASf")
+    network.promise("column falls", "row rises", counted(facts, "row_hold"))
+    drive(network, facts, "ras_n", "row rises", "RASr")
+    if write:
+        skewed(network, facts, ("we_n", "WEf"), ("cas_n", "CASf"), lead)
+    if by_tick:
+        span = counted(facts, "column", "write_lead") if write else counted(facts, "column")
+        skewed(network, facts, ("ras_n", "RASf"), ("cas_n", "CASf"), span)
+    network.promise("row rises", "row held on", counted(facts, plus=1))
+    network.promise("MREQr seen", "request over", counted(facts, plus=SYNCHRONISER))
+    network.promise("MREQr seen", "last start", counted(facts, plus=SYNCHRONISER - 1))
+    network.promise("column falls", "capped", counted(facts, "column_cap"))
+
+
+def _end(network: Network, facts: Facts, write: bool) -> None:
+    """Column strobe, write enable and the data buffer end at one edge; the address may move a tick later."""
+    drive(network, facts, "cas_n", "column rises", "CASr")
+    if write:
+        drive(network, facts, "we_n", "column rises", "WEr")
+        skewed(network, facts, ("cas_n", "CASr"), ("we_n", "WEr"), SAME)
+    network.promise("column rises", "address released", counted(facts, plus=1, at_least=True))
+    drive(network, facts, "ma", "address released", "column address ends")
+
+
+def _data(network: Network, facts: Facts, chip: Chip, write: bool) -> None:
+    """Data on its way: from the chip through the board's buffer to the bus, or from the bus to the chip."""
+    if write:
+        travel(network, "D", "DIN", facts.paths["data_in"])
+        travel(network, "D ends", "DIN ends", facts.paths["data_in"])
+        return
+    out = facts.paths["data_out"]
+    for symbol, cause in (("tRAC", "RASf"), ("tCAC", "CASf")):
+        figure = chip.limits.get(symbol)
+        if figure is not None:
+            network.promise(cause, f"DOUT {symbol}", Promise(symbol, None, figure.hi_ps, figure.source))
+            travel(network, f"DOUT {symbol}", f"data {symbol}", out)
+    off = chip.limits.get("tOFF")
+    if off is not None:
+        network.promise("CASr", "DOUT floats", from_figure(off))
+        travel(network, "DOUT floats", "data decays", out)
+    buffer = part_of(facts.board, "data_out")
+    drive(network, facts, "read_n", "column falls", "READf")
+    drive(network, facts, "read_n", "column rises", "READr")
+    if buffer is not None and buffer.enable is not None:
+        network.promise("READf", "buffer drives", from_figure(buffer.enable, f"data_out: {buffer.name} enable"))
+    if buffer is not None and buffer.disable is not None:
+        network.promise("READr", "buffer floats", from_figure(buffer.disable, f"data_out: {buffer.name} disable"))
+
+
+# --- what follows ------------------------------------------------------------------------------------------------
+
+
+def _next_cycle(network: Network, facts: Facts, follower: CycleKind, second: int) -> None:
+    """The neighbour: its strobes start on time or later."""
+    if follower == "interrupt acknowledge":
+        return
+    start = "next turn" if follower == "refresh" else "next row falls"
+    network.promise("next on time", start, counted(facts, at_least=True))
+    if follower == "refresh":
+        _refresh(network, facts, "next ")
+    else:
+        _next_access(network, facts, follower == "memory write")
+    if follower == "memory write":
+        return
+    # Another reader may drive the bus as soon as RD falls.
+    if network.holds("next RDf"):
+        network.promise("next RDf", "next driver", SAME)
+
+
+def _next_access(network: Network, facts: Facts, write: bool) -> None:
+    drive(network, facts, "ras_n", "next row falls", "next RASf")
+    network.promise("next row falls", "next go", counted(facts, "column", at_least=True))
+    if write:
+        network.promise("next go", "next column falls", counted(facts, "write_lead", at_least=True))
+        drive(network, facts, "we_n", "next go", "next WEf")
+        if network.holds("next D"):
+            network.promise("next D", "next driver", SAME)
+    else:
+        network.promise("next go", "next column falls", SAME)
+    drive(network, facts, "cas_n", "next column falls", "next CASf")
+
+
+def _follow(network: Network, facts: Facts, last: str) -> None:
+    """Rest kept by the sequencer before the next strobe, whatever the bus asks; the address outputs follow at once."""
+    network.promise(last, "address followed", counted(facts, plus=1))
+    drive(network, facts, "ma", "address followed", "next row address")
+    for start in ("next turn", "next row falls"):
+        if network.holds(start):
+            network.promise("row rises", start, counted(facts, "precharge", at_least=True))
+            if last == "column rises":
+                network.promise(last, start, counted(facts, "column_rest", at_least=True))
+            break
+
+
+# --- without the bus ---------------------------------------------------------------------------------------------
+
+
+def _own_refreshes(facts: Facts, chip: Chip) -> Scene:
+    """Two refreshes of our own back to back, as in the warm-up."""
+    network = Network()
+    network.promise("on time", "turn", SAME)
+    _refresh(network, facts, "")
+    network.promise("row rises", "next turn", counted(facts, "precharge"))
+    _refresh(network, facts, "next ")
+    return Scene(network, chip, "own refresh", "own refresh", "", True)
+
+
+def _whatever(facts: Facts, chip: Chip) -> Scene:
+    """What the counted strobes keep whatever the bus does: the bus may break off, never come, or never end."""
+    network = Network()
+    shortest = counted(facts, "column", "row_hold", at_least=True)
+    longest = counted(facts, "give_up", "write_lead", "row_hold", at_most=True)
+    network.promise("row falls", "row rises", shortest)
+    network.promise("row falls", "row rises", longest)
+    network.promise("row falls", "column selected", counted(facts, "mux"))
+    network.promise("row falls", "column falls", counted(facts, "column", at_least=True))
+    network.promise("column falls", "row rises", counted(facts, "row_hold"))
+    network.promise("row rises", "column rises", counted(facts, plus=1, at_least=True))
+    network.promise("column falls", "column rises", counted(facts, "column_cap", at_most=True))
+    network.promise("column rises", "address released", counted(facts, plus=1, at_least=True))
+    network.promise("row rises", "next row falls", counted(facts, "precharge", at_least=True))
+    network.promise("column rises", "next row falls", counted(facts, "column_rest", at_least=True))
+    for net, edge, event in (
+        ("ras_n", "row falls", "RASf"),
+        ("ras_n", "row rises", "RASr"),
+        ("cas_n", "column falls", "CASf"),
+        ("cas_n", "column rises", "CASr"),
+        ("ma", "column selected", "row address ends"),
+        ("ma", "column selected", "column address"),
+        ("ma", "address released", "column address ends"),
+    ):
+        drive(network, facts, net, edge, event)
+    _next_access(network, facts, write=False)
+    return Scene(network, chip, "any access", "whatever the bus does", "", True)

@@ -1,0 +1,211 @@
+"""The choice of ticks: the largest worst margin, then the next worst, and so on; then fewer ticks.
+
+Takes `Facts` and the ticks given by hand; gives a tick table for access and refresh (not for the timer). Every margin
+is the sum of promises on one path of a network, so it moves in a straight line with each tick until another path
+takes over. The search keeps every such line it has met, picks the best table by those lines, has it judged in full,
+learns new lines, and stops when the pick has been judged. A kept line is never above the true margin, so nothing is
+promised that the judge does not confirm. Must not know the board file.
+"""
+
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass, field, replace
+
+from rowkeeper.contract import TickTable
+from rowkeeper.reading.board import Chip, GivenTicks
+from rowkeeper.timing.device import Facts, with_ticks
+from rowkeeper.timing.margins import Judged, judged
+from rowkeeper.timing.scenes import chips_of
+
+__all__ = ["best_ticks", "first_guess", "sorted_margins"]
+
+_ROUNDS = 8
+_REACH = 8  # how far from the guess each tick is tried
+_CHOSEN = ("mux", "column", "row_hold", "row_setup", "write_lead", "column_rest", "refresh_low", "precharge")
+_LEAST = {"mux": 1, "column": 2, "row_hold": 2, "row_setup": 1, "write_lead": 1, "column_rest": 2}
+_LEAST |= {"refresh_low": 2, "precharge": 3}
+_PATIENCE_CLOCKS = 1  # bus clocks to spare before an access is given up or a column strobe ended
+
+Line = tuple[int, tuple[tuple[int, int], ...]]  # constant, and picoseconds per tick of each of _CHOSEN that counts
+Group = tuple[tuple[Line, ...], tuple[Line, ...], int]  # lines, guards, and how many margins move so
+
+
+@dataclass(slots=True)
+class _Lines:
+    """Lines met so far. `margins`: of each hard margin; `guards`: what must not be negative for a case to happen."""
+
+    margins: dict[tuple[str, ...], set[Line]] = field(default_factory=dict)
+    guards: dict[tuple[str, ...], set[tuple[Line, ...]]] = field(default_factory=dict)
+
+    def learn(self, ticks: TickTable, found: Iterable[Judged]) -> None:
+        for one in found:
+            m = one.margin
+            if m.kind != "hard" or not any(name in one.per_tick for name in _CHOSEN):
+                continue
+            key = (m.symbol, m.cycle, m.neighbour, m.sense, m.note, one.case)
+            self.margins.setdefault(key, set()).add(_line(ticks, m.margin_ps, one.per_tick))
+            guards = tuple(_line(ticks, c.total_ps, c.per_tick) for c in one.conditions)
+            self.guards.setdefault(key, set()).add(guards)
+
+    def grouped(self) -> list[Group]:
+        """Margins that move alike are worked out once: their lines, their guards, how many there are."""
+        groups: dict[tuple[tuple[Line, ...], tuple[Line, ...]], int] = {}
+        for key, lines in self.margins.items():
+            guards = self.guards[key]
+            one = next(iter(guards)) if len(guards) == 1 else ()
+            group = tuple(sorted(lines)), one
+            groups[group] = groups.get(group, 0) + 1
+        return [(lines, guards, count) for (lines, guards), count in groups.items()]
+
+
+def _line(ticks: TickTable, value_ps: int, per_tick: Mapping[str, int]) -> Line:
+    slopes = tuple((i, per_tick[name]) for i, name in enumerate(_CHOSEN) if per_tick.get(name))
+    return value_ps - sum(slope * getattr(ticks, _CHOSEN[i]) for i, slope in slopes), slopes
+
+
+def _at(line: Line, at: tuple[int, ...]) -> int:
+    total, slopes = line
+    for i, slope in slopes:
+        total += slope * at[i]
+    return total
+
+
+def sorted_margins(found: Iterable[Judged]) -> tuple[int, ...]:
+    """Hard margins, worst first: what one plan is compared to another by."""
+    return tuple(sorted(one.margin.margin_ps for one in found if one.margin.kind == "hard"))
+
+
+def _vector(groups: list[Group], at: tuple[int, ...]) -> list[int]:
+    values: list[int] = []
+    for lines, guards, count in groups:
+        if any(_at(guard, at) < 0 for guard in guards):
+            continue
+        values += [max(_at(line, at) for line in lines)] * count
+    values.sort()
+    return values
+
+
+# --- the first guess ---------------------------------------------------------------------------------------------
+
+
+def _up(ps: int, tick_ps: int) -> int:
+    return -(-ps // tick_ps)
+
+
+def first_guess(facts: Facts, given: GivenTicks) -> TickTable:
+    """Ticks that keep each limit on its own, were all paths as far apart as they can be."""
+    tick = facts.tick_lo_ps
+    outputs = [facts.paths[n] for n in ("ras_n", "cas_n", "we_n", "ma")]
+    spread = max(p.hi_ps for p in outputs) - min(p.lo_ps for p in outputs)
+
+    def ticks_for(*symbols: str) -> int:
+        return max(1, max(_up(_asked(chips_of(facts), s) + spread, tick) for s in symbols))
+
+    mux = given.mux or ticks_for("tRAH")
+    column = given.column or max(mux + ticks_for("tASC"), ticks_for("tRCD"))
+    row_hold = max(ticks_for("tRSH"), ticks_for("tRAS") - column, ticks_for("tCAS") - 1, ticks_for("tCSH") - column - 1)
+    if given.row_end is not None:
+        row_hold = given.row_end - column
+    period = facts.clock.period_hi_ps
+    longest = _up((6 * period + facts.board.at_worst.wait_max_ps), tick)
+    return TickTable(
+        given.style or "counted",
+        row_setup=ticks_for("tASR"),
+        mux=mux,
+        column=column,
+        row_hold=row_hold,
+        write_lead=ticks_for("tWCS"),
+        give_up=longest,
+        column_cap=longest,
+        column_rest=max(2, ticks_for("tCRP", "tCPN") - column),
+        refresh_low=ticks_for("tRAS"),
+        precharge=max(3, ticks_for("tRP")),
+        standby=1,
+        forced=1,
+        reset_settle=1,
+        pause=1,
+        warm_up_cycles=1,
+    )
+
+
+def _asked(chips: tuple[Chip, ...], symbol: str) -> int:
+    return max((chip.limits[symbol].lo_ps or 0) if symbol in chip.limits else 0 for chip in chips)
+
+
+# --- the search --------------------------------------------------------------------------------------------------
+
+
+def best_ticks(facts: Facts, given: GivenTicks) -> TickTable:
+    """The best table found; its margins may still be negative, and then they are the least bad ones met."""
+    ticks = first_guess(facts, given)
+    lines = _Lines()
+    met: dict[TickTable, tuple[tuple[int, ...], int]] = {}
+    for _ in range(_ROUNDS):
+        found = judged(with_ticks(facts, ticks))
+        met[ticks] = sorted_margins(found), -sum(getattr(ticks, name) for name in _CHOSEN)
+        lines.learn(ticks, found)
+        ticks = _patient(facts, _pick(lines, ticks, given), found)
+        if ticks in met:
+            break
+    return max(met, key=lambda table: met[table])
+
+
+def _patient(facts: Facts, ticks: TickTable, found: Iterable[Judged]) -> TickTable:
+    """`give_up` and `column_cap`: a bus clock later than the bus can need, and no later."""
+    spare = _PATIENCE_CLOCKS * facts.clock.period_hi_ps
+    for symbol, name in (("give up", "give_up"), ("column cap", "column_cap")):
+        margins = [one.margin.margin_ps for one in found if one.margin.symbol == symbol]
+        if margins:
+            step = _up(spare - min(margins), facts.tick_lo_ps)
+            ticks = replace(ticks, **{name: max(getattr(ticks, name) + step, ticks.row_end + ticks.write_lead + 2)})
+    return ticks
+
+
+def _pick(lines: _Lines, start: TickTable, given: GivenTicks) -> TickTable:
+    """The best table by the lines met so far.
+
+    For each column tick every other tick is moved in turn until none gets better. Most margins hang on one of them
+    alone, and what the others share stays as it is in the comparison, so this settles in two or three turns.
+    """
+    groups = lines.grouped()
+    best = tuple(getattr(start, name) for name in _CHOSEN)
+    score = _score(groups, best)
+    columns = [given.column] if given.column is not None else _span(best[1], _LEAST["column"])
+    for column in columns:
+        choice = _settle(groups, (best[0], column, *best[2:]), given)
+        one = _score(groups, choice)
+        if one > score:
+            best, score = choice, one
+    return replace(start, **dict(zip(_CHOSEN, best, strict=True)))
+
+
+def _span(ticks: int, least: int) -> range:
+    return range(max(least, ticks - _REACH), ticks + _REACH + 1)
+
+
+def _settle(groups: list[Group], at: tuple[int, ...], given: GivenTicks) -> tuple[int, ...]:
+    """Every tick but the column's, each at its best while the others stay, until nothing moves."""
+    column = at[1]
+    at = (min(at[0], column - 1), *at[1:])
+    if given.mux is not None:
+        at = (given.mux, *at[1:])
+    if given.row_end is not None:
+        at = (*at[:2], max(_LEAST["row_hold"], given.row_end - column), *at[3:])
+    score = _score(groups, at)
+    before: tuple[int, ...] | None = None
+    while at != before:
+        before = at
+        for i, name in enumerate(_CHOSEN):
+            fixed = name == "column" or getattr(given, {"row_hold": "row_end"}.get(name, name), None) is not None
+            if fixed:
+                continue
+            values = range(1, column) if name == "mux" else _span(at[i], _LEAST[name])
+            for value in values:
+                choice = (*at[:i], value, *at[i + 1 :])
+                one = _score(groups, choice)
+                if one > score:
+                    at, score = choice, one
+    return at
+
+
+def _score(groups: list[Group], at: tuple[int, ...]) -> tuple[list[int], int]:
+    return _vector(groups, at), -sum(at)
