@@ -28,7 +28,7 @@ def test_the_gates_of_tables_of_four_inputs_compute_that_table() -> None:
 def test_a_wide_and_takes_one_gate_per_pair() -> None:
     """Four inputs anded take three gates, and no multiplexer."""
     lines = list(gate_lines(0x8000, ["\\a", "\\b", "\\c", "\\d"], "\\y"))
-    assert [line.split()[1] for line in lines if line.startswith("  cell")] == ["$_AND_"] * 3
+    assert [line.split()[1] for line in lines if line.startswith("  cell")] == ["$and"] * 3
 
 
 def test_a_constant_and_a_wire_take_no_gate() -> None:

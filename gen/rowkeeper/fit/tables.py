@@ -1,14 +1,14 @@
 """A table of up to four inputs as a few gates: what a logic cell of the device computes.
 
 Takes a table, bit r of which is the output for the inputs' binary number r, and the nets of its inputs; gives gates
-in RTLIL. Must not know the device.
+in RTLIL, of the word-level kinds that every backend of Yosys takes, one bit wide. Must not know the device.
 """
 
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from functools import cache
 
-__all__ = ["evaluate", "gate_lines"]
+__all__ = ["evaluate", "gate", "gate_lines"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -43,16 +43,19 @@ def _split(table: int, inputs: tuple[int, ...], place: int) -> _Node:
     if (low, high) == (0, full):
         return this
     if (low, high) == (full, 0):
-        return _gate("$_NOT_", this)
-    if low in (0, full) or low == full ^ high:
-        kind, other = ("$_XOR_", low) if low == full ^ high else ("$_ORNOT_" if low else "$_AND_", high)
-        return _gate(kind, _best(other, rest), this)
+        return _joined("not", this)
+    if low == full ^ high:
+        return _joined("xor", _best(low, rest), this)
+    if low in (0, full):
+        return (
+            _joined("or", _best(high, rest), _joined("not", this)) if low else _joined("and", _best(high, rest), this)
+        )
     if high in (0, full):
-        return _gate("$_OR_" if high else "$_ANDNOT_", _best(low, rest), this)
-    return _gate("$_MUX_", _best(low, rest), _best(high, rest), this)
+        return _joined("or", _best(low, rest), this) if high else _joined("and", _best(low, rest), _joined("not", this))
+    return _joined("mux", _best(low, rest), _best(high, rest), this)
 
 
-def _gate(kind: str, *parts: _Node) -> _Node:
+def _joined(kind: str, *parts: _Node) -> _Node:
     return _Node(kind, parts, 1 + sum(part.cost for part in parts))
 
 
@@ -75,8 +78,8 @@ def _value(node: _Node, values: Sequence[int]) -> int:
         return values[number] if isinstance(number, int) else 0
     a, *others = (_value(part, values) for part in node.parts if isinstance(part, _Node))
     b = others[0] if others else 0
-    results = {"$_NOT_": 1 - a, "$_AND_": a & b, "$_ANDNOT_": a & (1 - b), "$_OR_": a | b, "$_ORNOT_": a | (1 - b)}
-    return results.get(node.kind, a ^ b) if node.kind != "$_MUX_" else (b if others[1] else a)
+    results = {"not": 1 - a, "and": a & b, "or": a | b, "xor": a ^ b, "mux": b if others[1:] == [1] else a}
+    return results[node.kind]
 
 
 def gate_lines(table: int, nets: Sequence[str], output: str) -> Iterator[str]:
@@ -97,17 +100,28 @@ def _leaf(node: _Node, nets: Sequence[str]) -> str:
 
 def _cell(node: _Node, nets: Sequence[str], output: str, name: str) -> Iterator[str]:
     inputs = []
-    for pin, part in zip("ABS", node.parts, strict=False):
+    for pin, part in zip("abs", node.parts, strict=False):
         if not isinstance(part, _Node):
             continue
         if part.kind in ("0", "1", "wire"):
-            inputs.append((pin, _leaf(part, nets)))
+            inputs.append(_leaf(part, nets))
             continue
-        inner = f"{name}{pin.lower()}"
+        inner = f"{name}{pin}"
         yield f"  wire {inner}"
         yield from _cell(part, nets, inner, inner)
-        inputs.append((pin, inner))
-    yield f"  cell {node.kind} {name}$gate"
-    yield from (f"    connect \\{pin} {net}" for pin, net in inputs)
+        inputs.append(inner)
+    yield from gate(node.kind, f"{name}$gate", inputs, output)
+
+
+def gate(kind: str, name: str, inputs: Sequence[str], output: str) -> Iterator[str]:
+    """RTLIL of one gate: not, and, or, xor; or mux, which gives its second input where its third is 1."""
+    pins = "ABS"[: len(inputs)]
+    yield f"  cell ${kind} {name}"
+    if kind == "mux":
+        yield "    parameter \\WIDTH 1"
+    else:
+        yield from (f"    parameter \\{pin}_SIGNED 0" for pin in pins)
+        yield from (f"    parameter \\{pin}_WIDTH 1" for pin in (*pins, "Y"))
+    yield from (f"    connect \\{pin} {net}" for pin, net in zip(pins, inputs, strict=True))
     yield f"    connect \\Y {output}"
     yield "  end"
