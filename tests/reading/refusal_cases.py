@@ -171,6 +171,20 @@ CASES = (
         _RAS,
         _RAS.replace("{buffer: SN74AHCT541, designator: U22}", "{translator: SN74LVC245A, designator: U30}"),
     ),
+    Case("wire-at-the-supply-of-the-other-side", "{direct: 3.3 V}, {load: 45 pF}", "{direct: 5 V}, {load: 45 pF}"),
+    Case("bus-wire-at-3-v", "meets: U10-U17.2, through: [{direct: 5 V}", "meets: U10-U17.2, through: [{direct: 3.3 V}"),
+    Case("buffer-in-a-memory-socket", "{buffer: SN74LS244, designator: U6}", "{buffer: SN74LS244, designator: U12}"),
+    Case("revision-that-is-a-block", "revision: B", "revision: [B]"),
+    Case("grant-master-of-another-kind", "master: silent", "master: refreshes"),
+    Case("device-clock-missing", "  clock: {frequency: 100 MHz, tolerance: 50 ppm}\n", ""),
+    Case(
+        "bus-clock-missing",
+        "  clock: {frequency: 4 MHz, tolerance: 100 ppm, duty: {min: 48 %, max: 52 %}, "
+        "rise: {max: 10 ns}, fall: {max: 10 ns}}\n",
+        "",
+    ),
+    Case("parts-list-with-a-block", "    - U3, the refresh counter", "    - {U3: the refresh counter}"),
+    Case("net-of-nothing-like-it", "net: ras_n", "net: qqqq"),
     Case("oscillator-for-5-v", _CLK, _CLK.replace("3.3 V", "5 V")),
     # --- names
     Case("name-with-quotes", '"Loom card memory, 16 KB"', "'Loom \"card\"'"),

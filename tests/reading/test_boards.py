@@ -142,6 +142,39 @@ def test_wrong_catalogue_files(tmp_path: Path, old: str, new: str, message: str)
     assert message in [problem.message for problem in caught.value.problems]
 
 
+OWN_FILES = [
+    # kind, shipped file, text, exchanged for, message
+    ("buses", "m1-refresh", "TwCh + TfC - 75 ns,", "TwCx + TfC,", "`TwCx + TfC` is not a sum of clock terms"),
+    ("buses", "m1-refresh", "assumptions:\n", "assumptions: none\nnotes:\n", "`assumptions` must be a block of keys"),
+    ("buses", "m1-refresh", "figures:\n", "figures: none\nnotes:\n", "a table must be a block of keys"),
+    ("buses", "m1-refresh", "formulas:\n", "formulas: none\nnotes:\n", "`formulas` must be a block of keys"),
+    ("buses", "m1-refresh", "sources:\n", "sources: none\nnotes:\n", "`sources` must be a block of keys"),
+    ("buses", "m1-refresh", "ThD: {min: 0 ns, note:", "ThD: {note:", "ThD has neither min nor max"),
+    ("devices", "ice40hx1k-vq100", "{pin: 2, name", "{pin: 1, name", "pin 1 stands twice"),
+    ("devices", "ice40hx1k-vq100", "pins: 100}", "pins: 99}", "100 pins listed, the package has 99"),
+    ("devices", "ice40hx1k-vq100", "role: io, bank: \"2\"}\n  - {pin: 27", "role: bus}\n  - {pin: 27",
+     "`bus` is not a known pin role"),
+    ("devices", "ice40hx1k-vq100", "  output_pad:", "  outputpad:", "the figure `output_pad` is missing"),
+    ("devices", "ice40hx1k-vq100", "family: ice40", "family: ice50", "`ice50` is not a known device family"),
+    ("parts", "SN74LS244", "role: buffer", "role: latch", "`latch` is not a known role"),
+    ("parts", "SN74LS244", "channels: 8", "channels: -8", "`-8` is not a whole number"),
+    ("parts", "SN74LS244", "supply: {nominal: 5 V, max: 5.25 V}", "supply: 5 V", "`supply` must be a block of keys"),
+]  # fmt: skip
+
+
+@pytest.mark.parametrize(("kind", "file", "old", "new", "message"), OWN_FILES, ids=[row[4] for row in OWN_FILES])
+def test_wrong_files_of_every_kind(tmp_path: Path, kind: str, file: str, old: str, new: str, message: str) -> None:
+    """Bus, device and part files beside a board are refused with the place of the mistake."""
+    text = (resources.files("rowkeeper") / "catalog" / kind / f"{file}.yaml").read_text(encoding="utf-8")
+    assert text.count(old) == 1
+    (tmp_path / kind).mkdir()
+    (tmp_path / kind / f"{file}.yaml").write_text(text.replace(old, new), encoding="utf-8")
+    with pytest.raises(Refused) as caught:
+        read_board_text(LOOM, "loom-16k.yaml", tmp_path)
+    assert message in [problem.message for problem in caught.value.problems]
+    assert {Path(problem.at.file).parent.name for problem in caught.value.problems} == {kind}
+
+
 def test_digest_sees_every_byte() -> None:
     """Even a comment changes the digest: it is a digest of the file, not of its meaning."""
     changed = read_board_text(LOOM + b"# more\n", "loom-16k.yaml", None)

@@ -18,6 +18,7 @@ from rowkeeper.reading.sensible import (
     check_bank,
     check_banks,
     check_channels,
+    check_designators,
     check_loads,
     check_needed,
     check_pins,
@@ -175,6 +176,7 @@ class _Reader:
             needed = [n for n in all_nets(family.address_bits, bits) if n not in _OPTIONAL_LINES]
             if len(nets) == len(self._sections.items("wiring")):  # else a net that seems missing has a wrong name
                 check_needed(nets, needed, at, problems)
+            check_designators(nets, bank, problems)
             check_sockets(nets, bank, problems)
             check_loads(nets, bank, problems)
             for net in nets if device is not None else ():

@@ -13,6 +13,8 @@ __all__ = ["check_levels"]
 
 # Transistor-transistor logic is designed to it; less of it between a 3.3 V device and a memory input asks for a buffer.
 _NOISE_MARGIN_MV = 400
+_DEVICE_RAIL_MV = 3300
+_BUS_RAIL_MV = 5000
 _ON_MEMORY_STROBES = ("ras_n", "cas_n", "we_n")
 
 
@@ -29,7 +31,7 @@ class _End:
 
 def _volts(millivolts: int) -> str:
     text = f"{millivolts / 1000:.2f}".rstrip("0")
-    return f"{text}0 V" if text.endswith(".") else f"{text} V"
+    return f"{text.rstrip('.')} V"
 
 
 def _driver(net: Net, chip: Chip, bus: BusFamily, device: Device) -> _End | None:
@@ -95,24 +97,45 @@ def _check_wire(net: Net, driver: _End, receiver: _End, problems: Problems) -> N
         )
 
 
-def _check_rail(net: Net, driver: _End | None, device: Device, problems: Problems) -> _End | None:
-    """A plain wire into the device must come from a supply that the device takes."""
-    rail = next((e.rail_mv for e in net.through if e.kind == "direct"), 0)
+def _check_oscillator(net: Net, device: Device, problems: Problems) -> None:
+    """The wire from the oscillator names its supply, which the device must take."""
+    rail = _rail(net)
     most = device.levels.abs_max_mv
-    if driver is None and most is not None and rail > most:
+    if most is not None and rail > most:
         problems.add(
             net.at,
             f"net {net.name}: the oscillator drives {_volts(rail)}, the device takes {_volts(most)} at most",
             "use an oscillator for 3.3 V, or put a translator in front of the device",
         )
-    return driver
+
+
+def _rail(net: Net) -> int:
+    """The supply of the wire at the driver, 0 where the path begins with a part."""
+    first = net.through[0]
+    return first.rail_mv if first.kind == "direct" else 0
+
+
+def _check_rail(net: Net, problems: Problems) -> None:
+    """A plain wire at the driver names the driver's own supply: 3.3 V from the device, 5 V from bus and memory."""
+    expected = _DEVICE_RAIL_MV if net.side == "output" else _BUS_RAIL_MV
+    rail = _rail(net)
+    if rail and rail != expected:
+        who = "the device" if net.side == "output" else "the other end"
+        problems.add(
+            net.through[0].at,
+            f"net {net.name} is a plain wire at {_volts(rail)}, but {who} drives it from {_volts(expected)}",
+            f"write `direct: {_volts(expected)}`, or put a part between the two supplies",
+        )
 
 
 def check_levels(net: Net, chip: Chip, bus: BusFamily, device: Device, problems: Problems) -> None:
     """Every wire of one net. A net without its path was refused already."""
     if not net.through:
         return
-    driver = _check_rail(net, _driver(net, chip, bus, device), device, problems)
+    before = len(problems)
+    driver = _driver(net, chip, bus, device)
+    if driver is None:
+        _check_oscillator(net, device, problems)
     for element in net.through:
         if element.part is None:
             continue
@@ -124,3 +147,5 @@ def check_levels(net: Net, chip: Chip, bus: BusFamily, device: Device, problems:
     receiver = _receiver(net, chip, bus, device)
     if driver is not None and receiver is not None:
         _check_wire(net, driver, receiver, problems)
+    if net.name != "clk" and len(problems) == before:
+        _check_rail(net, problems)

@@ -101,7 +101,8 @@ def _line_and_caret(line: str, index: int) -> tuple[str, str]:
 def printed(problem: Problem) -> str:
     """`file:line:col: message`, the line, a caret under the place, and the fix."""
     at = problem.at
-    place = f"{at.file}:{at.line}:{at.column}" if at.line else at.file
+    file = "".join(c if c.isprintable() else "?" for c in at.file)
+    place = f"{file}:{at.line}:{at.column}" if at.line else file
     text = [f"{place}: {problem.message}"]
     if at.line and problem.line.strip():
         text += _line_and_caret(problem.line, at.column - 1)

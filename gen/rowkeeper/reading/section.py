@@ -153,7 +153,11 @@ def one_of(scalar: Scalar, names: Iterable[str], what: str, problems: Problems) 
     if scalar.text in known:
         return scalar.text
     guess = None if any(c.isdigit() for c in scalar.text) else nearest(scalar.text, known)  # 5 MHz is not like 2.5 MHz
-    choices = f"the choices are {listed(known)}"
-    fix = f"did you mean `{guess}`? {choices[0].upper()}{choices[1:]}" if guess else f"{choices}"
+    if len(known) == 1:
+        fix = f"write `{known[0]}`"
+    elif guess:
+        fix = f"did you mean `{guess}`? The choices are {listed(known)}"
+    else:
+        fix = f"the choices are {listed(known)}"
     problems.add(scalar.at, f"{quoted(scalar.text)} is not a known {what}", fix)
     return None

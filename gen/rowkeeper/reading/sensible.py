@@ -17,12 +17,14 @@ __all__ = [
     "check_bank",
     "check_banks",
     "check_channels",
+    "check_designators",
     "check_loads",
     "check_needed",
     "check_pins",
     "check_places",
+    "check_refresh",
+    "check_sockets",
 ]
-__all__ += ["check_refresh", "check_sockets"]
 
 _ROLE_WORDS = {
     "supply": "a supply pin",
@@ -216,6 +218,22 @@ def check_sockets(nets: Sequence[Net], bank: Bank, problems: Problems) -> None:
                 f"net {net.name} meets {net.meets}, but {signal} of {bank.chip.name} is pin {pin} of {bank.sockets}",
                 f"write `meets: {bank.sockets}.{pin}`",
             )
+
+
+def check_designators(nets: Sequence[Net], bank: Bank, problems: Problems) -> None:
+    """A part of a path does not sit where a memory chip sits."""
+    sockets = {place.partition(".")[0] for place in _places(f"{bank.sockets}.1")}
+    noted: set[str] = set()
+    for net in nets:
+        for element in net.through:
+            if element.part is not None and element.designator in sockets - noted:
+                noted.add(element.designator)
+                problems.add(
+                    element.at,
+                    f"{element.designator} is {element.part.name} here, but one of the memory chips {bank.sockets} "
+                    f"in line {bank.at.line}",
+                    "give the part a designator of its own",
+                )
 
 
 def _channels(number: int) -> str:

@@ -29,8 +29,18 @@ from rowkeeper.reading.units import (
     yes_or_no,
 )
 
-__all__ = ["BusPart", "Heading", "RefreshPart", "read_banks", "read_bus_part", "read_device_part", "read_heading"]
-__all__ += ["read_refresh", "read_strobes", "unknown"]
+__all__ = [
+    "BusPart",
+    "Heading",
+    "RefreshPart",
+    "read_banks",
+    "read_bus_part",
+    "read_device_part",
+    "read_heading",
+    "read_refresh",
+    "read_strobes",
+    "unknown",
+]
 
 _TICKS = ("mux", "column", "row_end")
 _NO_CLOCK = ClockSpec(Fraction(1), Fraction(0), Fraction(1, 2), Fraction(1, 2), 0, 0)

@@ -123,6 +123,12 @@ def _path(section: Section, name: str, catalogue: Catalogue, problems: Problems)
     return path if len(problems) == before else ()
 
 
+def _last(kind: str, expected: tuple[str, ...]) -> int:
+    """The highest number of the nets `a...` or `ma...`."""
+    matches = [_NUMBERED.fullmatch(name) for name in expected]
+    return max((int(match[2]) for match in matches if match and match[1] == kind), default=0)
+
+
 def _name(section: Section, expected: tuple[str, ...], problems: Problems) -> str:
     scalar = section.scalar("net")
     if scalar is None:
@@ -135,11 +141,13 @@ def _name(section: Section, expected: tuple[str, ...], problems: Problems) -> st
         return ""
     if _NUMBERED.fullmatch(name):
         kind = "ma" if name.startswith("ma") else "a"
-        last = max((int(n[len(kind) :]) for n in expected if re.fullmatch(kind + r"\d+", n)), default=0)
-        problems.add(scalar.at, f"this board has no net {name}", f"the nets run from {kind}0 to {kind}{last}")
+        fix = f"the nets run from {kind}0 to {kind}{_last(kind, expected)}"
+        problems.add(scalar.at, f"this board has no net {name}", fix)
         return ""
     guess = nearest(name, expected)
-    fix = f"did you mean `{guess}`?" if guess else f"the nets are {listed(expected, 'and')}"
+    plain = [net for net in expected if not _NUMBERED.fullmatch(net)]
+    ranges = [f"{kind}0 to {kind}{_last(kind, expected)}" for kind in ("a", "ma")]
+    fix = f"did you mean `{guess}`?" if guess else f"the nets are {listed([*plain, *ranges], 'and')}"
     problems.add(scalar.at, f"there is no net {quoted(name)}", fix)
     return ""
 
