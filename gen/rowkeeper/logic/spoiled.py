@@ -73,10 +73,10 @@ def _served_forgotten(s: Sequencer, m: Module) -> None:
         m.d.sync += s.served.eq(0)
 
 
-def _served_early(s: Sequencer, m: Module) -> None:
-    """A request that comes while the strobes rest is thought to be served."""
-    with m.If((s.state == State.REST) & s.request):
-        m.d.sync += s.served.eq(1)
+def _served_twice(s: Sequencer, m: Module) -> None:
+    """A request that outlasts its access passes for a fresh one."""
+    with m.If(s.state == State.REST):
+        m.d.sync += s.served.eq(0)
 
 
 _CHANGES: Mapping[str, Callable[[Sequencer, Module], None]] = {
@@ -86,7 +86,7 @@ _CHANGES: Mapping[str, Callable[[Sequencer, Module], None]] = {
     "buffer-always": _buffer_always,
     "address-follows": _address_follows,
     "served-forgotten": _served_forgotten,
-    "served-early": _served_early,
+    "served-twice": _served_twice,
 }
 
 

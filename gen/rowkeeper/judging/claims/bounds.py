@@ -12,12 +12,17 @@ __all__ = ["Bounds"]
 class Bounds:
     """Promises of a legal bus. Least figures are rounded down to whole ticks, most figures up.
 
-    `request_high`, `request_low`: MREQ stays high or low at least this long. `drought`: the longest time without a
+    `request_low`: MREQ stays low at least this long; `request_high`: high after an access; `refresh_high`: high after a
+    refresh. `strobe`: RD or WR is low beside MREQ at least this long before MREQ rises. `notice`: from the end of
+    quiet (grant or reset about to end) to the next request. `drought`: the longest time without a
     refresh request of the bus and without a quiet tick at which the sequencer is idle. `legal_gap`: what is claimed
     of the gap between refresh strobes on such a bus.
     """
 
     request_high_ticks: int
     request_low_ticks: int
+    refresh_high_ticks: int
+    strobe_ticks: int
+    notice_ticks: int
     drought_ticks: int
     legal_gap_ticks: int

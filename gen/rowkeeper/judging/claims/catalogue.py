@@ -12,6 +12,7 @@ from rowkeeper.judging.claims.checker import Checker
 from rowkeeper.judging.claims.harness import harness_text
 from rowkeeper.judging.claims.kind import Kind
 from rowkeeper.judging.claims.refresh import AnyBound, LegalBound, Merged, RowSteps, WarmUp
+from rowkeeper.judging.claims.served import Served
 from rowkeeper.judging.claims.short import shortened, shortened_bounds
 from rowkeeper.judging.claims.strobes import DataBuffer, EarlyWrite, NeverCut, NoColumnInRefresh, Order, Precharge
 
@@ -32,6 +33,7 @@ _ALL: tuple[type[Checker], ...] = (
     DataBuffer,
     Kind,
     Hit,
+    Served,
 )
 
 

@@ -40,8 +40,11 @@ def shortened_bounds(design: Design) -> Bounds:
     """Promises of a bus that goes with the short ticks."""
     t = design.ticks
     return Bounds(
-        request_high_ticks=4,
-        request_low_ticks=t.rest + 3,
+        request_low_ticks=t.row_end + 4,
+        request_high_ticks=t.rest + 2,
+        refresh_high_ticks=t.rest + 4,
+        strobe_ticks=t.row_hold + t.write_lead + 4,
+        notice_ticks=t.row_setup + t.refresh_low + t.rest + 4,
         drought_ticks=_DROUGHT,
         legal_gap_ticks=t.legal_gap(_DROUGHT),
     )

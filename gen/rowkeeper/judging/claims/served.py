@@ -1,0 +1,149 @@
+"""Claim about a legal bus: each request is served exactly once, at its tick.
+
+Takes a Scene and Bounds; statements over the pins under the promises of the bus. The helpers are two ranks (ticks at
+most until the sequencer is idle, and until its strobes rest) against the time since the request ended. Must not know
+picoseconds.
+"""
+
+from amaranth.hdl import Const, Module, Mux, Signal, Value
+
+from rowkeeper.judging.claims.checker import Checker
+from rowkeeper.judging.claims.scene import Scene, Seen, Stopwatch, Target, Turn, at_most
+from rowkeeper.judging.claims.strobe_account import account_seen, limits
+
+__all__ = ["Served"]
+
+
+def _positive(value: Value) -> Value:
+    return Mux(value > 0, value, 0)
+
+
+def _larger(left: Value, right: Value) -> Value:
+    return Mux(left > right, left, right)
+
+
+def _ranks(m: Module, scene: Scene) -> tuple[Signal, Signal]:
+    """Ticks at most until IDLE, and until IDLE or REST, with no request and nothing due."""
+    t = scene.design.ticks
+    step, rest = scene.probe("step"), scene.probe("rest")
+    after_column = max(t.precharge - 3, t.column_rest - 2, 0) + 1
+    after_row = max(t.precharge - 2, t.column_rest - 2, 0) + 1
+    resting = _positive(_larger(t.precharge - 2 - rest, t.column_rest - 2 - step)) + 1
+    held = _positive(_larger(t.precharge - 3 - rest, Const(t.column_rest - 2))) + 1
+    to_rest = {
+        "access": _positive(t.row_end - 1 - step) + 1,
+        "reading": t.row_hold + 1 - step,
+        "writing": t.write_lead + t.row_hold + 1 - step,
+        "holding": Const(1),
+        "preparing": t.row_setup + t.refresh_low - step,
+        "refreshing": t.refresh_low - step,
+    }
+    then = {"access": after_row, "reading": after_column, "writing": after_column, "holding": held}
+    then |= {"preparing": after_row, "refreshing": after_row}
+    most = 2 * (t.row_end + t.write_lead + t.refresh_low + t.row_setup + t.rest)
+    idle, rests = Signal(range(most), name="until_idle"), Signal(range(most), name="until_rest")
+    with m.If(scene.probe("resting")):
+        m.d.comb += idle.eq(resting)
+    for name, value in to_rest.items():
+        with m.If(scene.probe(name)):
+            m.d.comb += [rests.eq(value), idle.eq(value + then[name])]
+    return idle, rests
+
+
+class Served(Checker):
+    """Exactly one row strobe per request, one tick after the request is seen."""
+
+    name = "served"
+    sentence = (
+        "On a bus that keeps its promises every access in our window gets exactly one row strobe, one tick after its"
+        " request is seen, and every refresh request is taken up at that tick."
+    )
+    assertions = 3
+    assumptions = ("request-width", "strobe-length", "silence", "awake", "legal-bound")
+    spoiled = "served-twice"
+
+    def check(self) -> None:
+        s, b = self.scene, self.bounds
+        row_limit, _, _ = limits(self)
+        self.row = Stopwatch(self.m, s.row, row_limit, "row")
+        self.request = Seen(self.m, s, "mreq")
+        self.read, self.write = Seen(self.m, s, "rd"), Seen(self.m, s, "wr")
+        account_seen(self, self.request, self.read, self.write)
+        longest = 2 * (b.request_low_ticks + max(b.request_high_ticks, b.refresh_high_ticks) + row_limit)
+        self.asked = Stopwatch(self.m, self.request.second, longest, "request")
+        target = Target(self.m, s, self.request, self.row)
+        for name, holds in target.proper.items():
+            self.lemma(name, holds)
+        begins = self.asked.began & s.probe("ready")
+        ours, refresh = Signal(name="begins_ours"), Signal(name="begins_refresh")
+        self.m.d.sync += ours.eq(begins & ~s.probe("refresh") & s.in_window(target.asked))
+        self.m.d.sync += refresh.eq(begins & s.probe("refresh"))
+        access = self.row.began & ~s.probe("refreshing")
+        self.must("strobe", ~ours | access)
+        self.must("once", ~access | ours)
+        self.must("refresh", ~refresh | (s.probe("preparing") & (s.probe("step") == 0)))
+        self._assume()
+        self._lemmas()
+        self.cover(self.asked.began & s.probe("ready") & ~s.probe("refresh") & s.in_window(target.asked))
+
+    def _assume(self) -> None:
+        s, b, asked = self.scene, self.bounds, self.asked
+        self.kind_before = Signal(name="kind_before")  # of the request under way, or of the last one
+        with self.m.If(self.request.second):
+            self.m.d.sync += self.kind_before.eq(s.probe("refresh"))
+        self.high = Mux(self.kind_before, b.refresh_high_ticks, b.request_high_ticks)
+        self.assume("request_width_low", ~asked.over | (asked.ended >= b.request_low_ticks))
+        self.assume("request_width_high", ~asked.began | (asked.ended >= self.high))
+        # How long RD or WR has been seen beside the request, up to the tick before.
+        self.beside = Signal(range(asked.limit + 1), name="beside")
+        strobe = self.request.second & (self.read.second | self.write.second)
+        self.m.d.sync += self.beside.eq(Mux(strobe, at_most(self.beside + 1, asked.limit), 0))
+        self.assume("strobe_length", ~asked.over | self.kind_before | (self.beside >= b.strobe_ticks))
+        loud = Stopwatch(self.m, s.probe("quiet") | ~s.probe("ready"), b.notice_ticks + 2, "not_loud")
+        self.since_quiet = Mux(loud.level, 0, loud.lasted + 1)
+        self.assume("silence", ~self.request.second | ~(s.probe("quiet") | s.probe("granted")))
+        self.assume("silence_notice", ~asked.began | (self.since_quiet >= b.notice_ticks))
+        self.assume("awake", ~self.request.second | s.probe("ready"))
+        self.assume("legal_bound", ~s.probe("ready") | (s.probe("age") < s.design.ticks.forced))
+
+    def _lemmas(self) -> None:
+        s, b, asked = self.scene, self.bounds, self.asked
+        self.lemma("before", asked.before == s.probe("request_before"))
+        self.lemma("held", ~asked.before | (self.kind_before == s.probe("held")))
+        idle, rests = _ranks(self.m, s)
+        turn = Turn(self.m, s, self.request)
+        self.lemma("turn", turn.proper)
+        free = s.probe("ready") & ~self.request.second
+        for name, rank, early in (("idle", idle, 0), ("rests", rests, 2)):
+            high = self.high - early
+            notice = b.notice_ticks - early
+            by_bus = rank + Mux(asked.lasted < high, asked.lasted, high) <= high
+            by_us = rank + at_most(self.since_quiet, notice) <= notice
+            self.lemma(f"{name}_free", ~free | by_bus | by_us)
+        ended = (asked.lasted + 1 >= self.high) & (self.since_quiet + 1 >= b.notice_ticks)
+        self.lemma("follows", ~(free & ended) | turn.follows)
+        self._while_asked(idle, rests)
+
+    def _while_asked(self, idle: Signal, rests: Signal) -> None:
+        """How far a request has come, from how long it has been there and RD or WR beside it."""
+        s, t = self.scene, self.scene.design.ticks
+        step, lasted, beside = s.probe("step"), self.asked.lasted, self.beside
+        under_way = self.request.second & s.probe("ready") & ~self.asked.began
+        refresh, access = under_way & s.probe("refresh"), under_way & ~s.probe("refresh")
+        after_row = max(t.precharge - 2, t.column_rest - 2, 0) + 1
+        self.lemma(
+            "refresh_idle", ~refresh | (idle == 0) | (idle + lasted <= t.row_setup + t.refresh_low + after_row + 1)
+        )
+        self.lemma("refresh_rests", ~refresh | (rests == 0) | (rests + lasted <= t.row_setup + t.refresh_low + 1))
+        self.lemma("refresh_states", ~refresh | ~s.any_of("access", "reading", "writing", "holding"))
+        self.lemma("access_states", ~access | ~s.any_of("preparing", "refreshing"))
+        self.lemma("begin_idle", ~(self.asked.began & s.probe("ready")) | (s.probe("idle") & ~s.probe("served")))
+        self.lemma("served", ~under_way | s.probe("served"))
+        self.lemma("access", ~(access & s.probe("access")) | (lasted == step + 1))
+        self.lemma("access_bare", ~(access & s.probe("access") & (step >= t.column)) | (beside == 0))
+        write = Mux(s.write, t.write_lead, 0)
+        for name, since in (("reading", step), ("writing", step), ("holding", step + t.row_hold + write)):
+            on_time = (beside <= since + 1) | (lasted <= t.column + 1 + since)
+            self.lemma(f"on_time_{name}", ~(access & s.probe(name)) | on_time)
+        rested = (beside <= s.probe("rest") + 1) | (s.probe("rest") >= t.precharge)
+        self.lemma("on_time_resting", ~(access & s.probe("resting")) | rested)
