@@ -8,9 +8,13 @@ from rowkeeper.contract import ArbitrationSum, Note, Term
 from rowkeeper.reading.figures import Source
 from rowkeeper.timing.bus import from_figure
 from rowkeeper.timing.device import SYNCHRONISER, Facts, counted
+from rowkeeper.timing.margins import Judged, spare
 from rowkeeper.timing.network import UNPUBLISHED, Promise
 
-__all__ = ["arbitration", "arbitration_notes", "own_refresh_can_be_seen", "wired"]
+__all__ = ["arbitration", "arbitration_notes", "own_refresh_can_be_seen", "spare_by_notice", "wired"]
+
+_SETUP = "set-up the bus asks of this line"
+_SPANS = ("row_setup", "refresh_low", "precharge")
 
 
 def wired(facts: Facts, net: str) -> bool:
@@ -51,7 +55,7 @@ def _needed(facts: Facts, net: str) -> list[Term]:
         Term("aperture of the first flip-flop", -wide, wide, wide, facts.aperture.source),
         _term(counted(facts, plus=SYNCHRONISER - 1), upper=True),
     ]
-    return path + seen + [_term(counted(facts, name), upper=True) for name in ("row_setup", "refresh_low", "precharge")]
+    return path + seen + [_term(counted(facts, name), upper=True) for name in _SPANS]
 
 
 def _request(facts: Facts) -> list[Term]:
@@ -108,7 +112,7 @@ def _with_notice(
     plain = _sum(event, notice, _clocks(facts, clocks) + _request(facts), _needed(facts, net))
     if plain.margin_ps >= 0 or not setup_ps or source is None:
         return plain
-    setup = Term("set-up the bus asks of this line", setup_ps, None, setup_ps, source)
+    setup = Term(_SETUP, setup_ps, None, setup_ps, source)
     return _sum(
         event,
         f"{notice}, at its set-up time or earlier",
@@ -126,6 +130,16 @@ def _without_notice(facts: Facts, event: str, notice: str, net: str) -> Arbitrat
 def _sum(event: str, notice: str, available: list[Term], needed: list[Term]) -> ArbitrationSum:
     margin = sum(t.used_ps for t in available) - sum(t.used_ps for t in needed)
     return ArbitrationSum(event, notice, tuple(available), tuple(needed), margin)
+
+
+def spare_by_notice(facts: Facts) -> list[Judged]:
+    """What each sum leaves when the bus's own set-up is not counted."""
+    per_tick = dict.fromkeys(_SPANS, -facts.tick_hi_ps)
+    found: list[Judged] = []
+    for one in arbitration(facts):
+        plain = one.margin_ps - sum(t.used_ps for t in one.available if t.name == _SETUP)
+        found.append(spare("arbitration", one.event, plain, per_tick, facts.tick_source))
+    return found
 
 
 def arbitration_notes(facts: Facts, sums: tuple[ArbitrationSum, ...], forced_unused: bool) -> list[Note]:

@@ -1,9 +1,10 @@
 """The bus clock against the processor's own limits, before anything else is believed.
 
-Takes the board's clock and the bus grade; gives margins and notes. A grade is rated by nominal frequency, so TcC is
-judged on it; where the tolerance dips below, a note says so. Widths and edges are judged at their worst.
+Takes the board's clock and the bus grade; gives margins and notes. A grade is rated by nominal frequency, so TcC is judged on and the widths on their shares of the nominal period; where the tolerance dips below, a note says so. Duty and
+edges are judged at their worst.
 """
 
+from dataclasses import replace
 from fractions import Fraction
 
 from rowkeeper.contract import Margin, Note, Term
@@ -18,7 +19,7 @@ _PS = 10**12
 
 def clock_margins(board: Board) -> list[Margin]:
     """TcC, TwCh, TwCl, TrC and TfC of the grade, each against the board's clock."""
-    clock, figures = bus_clock(board.bus_clock), board.grade.figures
+    clock, figures = bus_clock(replace(board.bus_clock, tolerance_ppm=Fraction(0))), board.grade.figures
     edges = (("TfC", board.bus_clock.fall_max_ps), ("TrC", board.bus_clock.rise_max_ps))
     widths = (
         ("TwCh", clock.high_lo_ps, clock.high_hi_ps, clock.fall_max_ps),

@@ -129,6 +129,7 @@ def skewed(network: Network, facts: Facts, one: tuple[str, str], other: tuple[st
     if figure is None or figure.hi_ps is None:
         return
     first, second = facts.paths[one[0]].fast, facts.paths[other[0]].fast
-    skew = Promise(f"skew within one {one[0]}, {other[0]} package", -figure.hi_ps, figure.hi_ps, figure.source)
-    parts = (*(p for i, p in enumerate(second) if i != 1), *(minus(p) for i, p in enumerate(first) if i != 1))
+    skew = Promise(f"skew of {one[0]} and {other[0]} in one package", -figure.hi_ps, figure.hi_ps, figure.source)
+    # Third in the path of an output comes the package, after fabric and pad: the skew stands for both its delays.
+    parts = (*(p for i, p in enumerate(second) if i != 2), *(minus(p) for i, p in enumerate(first) if i != 2))
     network.promise(one[1], other[1], span, *parts, skew)

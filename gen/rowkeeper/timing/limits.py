@@ -226,17 +226,16 @@ def ready(scene: Scene, facts: Facts) -> list[Rule]:
     """Back at rest before the next request can be taken: its strobe is on time and its address was followed."""
     if scene.neighbour == "interrupt acknowledge":
         return []
-    note = "strobes rested before the next request is taken"
-    rules = [Rule("ready", "row rises", "next on time", "min", counted(facts, "precharge"), note=note)]
+    note = "strobe rested before the next request is taken"
+    row = f"row {note}"
+    rules = [Rule("ready", "row rises", "next on time", "min", counted(facts, "precharge"), note=row)]
+    last = "row rises"
     if scene.network.holds("column rises"):
+        last = "column rises"
         rest = counted(facts, "column_rest")
-        rules.append(Rule("ready", "column rises", "next on time", "min", rest, note=note))
-        follow = counted(facts, plus=1)
-        rules.append(Rule("ready", "column rises", "next MREQf seen", "min", follow, note="address followed again"))
-    else:
-        follow = counted(facts, plus=1)
-        rules.append(Rule("ready", "row rises", "next MREQf seen", "min", follow, note="address followed again"))
-    return rules
+        rules.append(Rule("ready", last, "next on time", "min", rest, note=f"column {note}"))
+    followed = "address followed again before it is taken"
+    return [*rules, Rule("ready", last, "next MREQf seen", "min", counted(facts, plus=1), note=followed)]
 
 
 WITHIN: tuple[_Maker, ...] = (

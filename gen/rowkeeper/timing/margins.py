@@ -16,7 +16,7 @@ from rowkeeper.timing.limits import ABSENT_IS_FINE, NOT_JUDGED, Rule, asked_symb
 from rowkeeper.timing.network import Bound
 from rowkeeper.timing.scenes import Scene, chips_of, scenes
 
-__all__ = ["Judged", "derated_ambient", "judged", "margin_notes", "worst_of"]
+__all__ = ["Judged", "derated_ambient", "judged", "margin_notes", "spare", "worst_of"]
 
 _DERATED = Source(Mark.SHEET, "MK4116 sheet", "p. 3 note 9")
 _TRANSITION_PS = 5_000  # the sheets' own tT for AC figures
@@ -27,6 +27,7 @@ class Judged:
     """One margin in one case. `per_tick`: picoseconds gained by one more of each tick; `conditions`: see `Scene`."""
 
     margin: Margin
+    events: tuple[str, str]
     case: str
     per_tick: Mapping[str, int]
     conditions: tuple[Bound, ...]
@@ -41,6 +42,12 @@ def judged(facts: Facts) -> list[Judged]:
             if one is not None:
                 found.append(one)
     return found
+
+
+def spare(symbol: str, situation: str, margin_ps: int, per_tick: Mapping[str, int], source: Source) -> Judged:
+    """Time to spare that is no limit of a sheet: only the choice of ticks sees it, beside the margins."""
+    m = Margin(symbol, situation, "", "min", "hard", 0, margin_ps, None, margin_ps, (), source, False)
+    return Judged(m, (situation, symbol), "", per_tick, ())
 
 
 def _judge(scene: Scene, rule: Rule) -> Judged | None:
@@ -72,7 +79,7 @@ def _judge(scene: Scene, rule: Rule) -> Judged | None:
     per_tick = {name: sign * ps for name, ps in bound.per_tick.items()}
     for name, times in rule.required.counts:
         per_tick[name] = per_tick.get(name, 0) - times * rule.required.tick_hi_ps
-    return Judged(_eased(record, scene.chip), scene.case, per_tick, scene.conditions)
+    return Judged(_eased(record, scene.chip), (rule.earlier, rule.later), scene.case, per_tick, scene.conditions)
 
 
 def _tainted(terms: Iterable[Term], source: Source) -> bool:

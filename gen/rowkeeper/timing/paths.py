@@ -25,9 +25,6 @@ __all__ = [
     "travel",
 ]
 
-_ROUTED_OR_PLANNED = "inside the device"
-
-
 @dataclass(frozen=True, slots=True)
 class Path:
     """`fast` holds the lower ends, `slow` the upper ends; for one net they are the same promises."""
@@ -58,33 +55,25 @@ def travel(network: Network, start: str, end: str, path: Path) -> None:
 
 
 def default_delays(board: Board) -> Delays:
-    """What is assumed of the device until the router has spoken: pad figure plus planning figure, per net."""
+    """What is assumed of the device's fabric until the router has spoken, per net. Pads are added by the paths."""
     device = board.device
-    sides = {
-        "input": (device.input_pad, device.before_routing_input),
-        "output": (device.output_pad, device.before_routing_output),
-    }
+    fabric = {"input": device.before_routing_input, "output": device.before_routing_output}
     nets: dict[str, NetDelay] = {}
     for net in board.wiring.nets:
-        if net.side == "path" or not net.pin:
-            continue
-        pad, fabric = sides[net.side]
-        window = Window((pad.lo_ps or 0) + (fabric.lo_ps or 0), (pad.hi_ps or 0) + (fabric.hi_ps or 0))
-        nets[net.name] = NetDelay(net.name, net.side, window, _weaker(pad.source, fabric.source))
+        if net.side != "path" and net.pin:
+            figure = fabric[net.side]
+            window = Window(figure.lo_ps or 0, figure.hi_ps or 0)
+            nets[net.name] = NetDelay(net.name, net.side, window, figure.source)
     return Delays(nets, routed=False)
 
 
-def _weaker(one: Source, other: Source) -> Source:
-    """The source that can be trusted less."""
-    order = [Mark.SHEET, Mark.ROUTED, Mark.BOARD, Mark.COPY, Mark.DERIVED, Mark.PRACTICE, Mark.UNPUBLISHED, Mark.MEMORY]
-    return max(one, other, key=lambda source: order.index(source.mark))
-
-
 def net_path(board: Board, delays: Delays, net: Net) -> Path:
-    """The whole path of one net: board and device in the order of travel."""
-    inside = _inside(delays, net.name)
-    outside = _outside(board, net)
-    promises = inside + outside if net.side == "output" else outside + inside
+    """The whole path of one net, board, pad and fabric in the order of travel."""
+    inside, outside = _inside(delays, net.name), _outside(board, net)
+    if net.side == "output":
+        promises = (*inside, *_pad(net, board.device.output_pad), *outside)
+    else:
+        promises = (*outside, *(_pad(net, board.device.input_pad) if net.side == "input" else ()), *inside)
     return Path(promises, promises)
 
 
@@ -133,12 +122,17 @@ def _belongs(net: str, names: str) -> bool:
     return net == names or (net.startswith(names) and net[len(names) :].strip("_").isdigit())
 
 
+def _pad(net: Net, figure: Figure) -> tuple[Promise, ...]:
+    """The pad of a net that touches the device: neither the fabric's figures nor the router's hold it."""
+    return (from_figure(figure, f"{net.name}: pad"),) if net.pin else ()
+
+
 def _inside(delays: Delays, net: str) -> tuple[Promise, ...]:
     found = delays.nets.get(net)
     if found is None:
         return ()
     lo = found.window.lo_ps
-    name = f"{net}: {_ROUTED_OR_PLANNED}"
+    name = f"{net}: {'routed' if delays.routed else 'before routing'}"
     return (Promise(name, lo or 0, found.window.hi_ps, found.source, None if lo else UNPUBLISHED),)
 
 

@@ -11,9 +11,19 @@ from fractions import Fraction
 from rowkeeper.contract import RefreshBounds, Term, TickTable
 from rowkeeper.reading.figures import Source
 from rowkeeper.timing.device import SYNCHRONISER, Facts
+from rowkeeper.timing.margins import Judged, spare
 from rowkeeper.timing.scenes import chips_of
 
-__all__ = ["Drought", "TimerTicks", "drought_of", "least_bus_clock_hz", "refresh_bounds", "short_grant_clocks", "timer_ticks"]
+__all__ = [
+    "Drought",
+    "TimerTicks",
+    "drought_of",
+    "least_bus_clock_hz",
+    "refresh_bounds",
+    "short_grant_clocks",
+    "spare_by_service",
+    "timer_ticks",
+]
 
 _GUARD = 4  # ticks kept free below the chip's interval
 _SLACK = 4  # ticks between a bus request being seen and its refresh strobe, beyond row_setup
@@ -117,11 +127,41 @@ def _reset_terms(facts: Facts, reset_settle: int, short_resets: bool) -> list[tu
 
 @dataclass(frozen=True, slots=True)
 class TimerTicks:
-    """The timer's ticks, and by how many ticks they fail to fit (0 when they fit)."""
+    """The timer's ticks, and by how many ticks `standby` fails to reach its least (0 when it fits).
+
+    `missing_below_one`: a standby below one tick is given as one; this is what was left off.
+    """
 
     ticks: TickTable
     drought: Drought
     missing: int
+    missing_below_one: int
+
+
+def _least_standby(ticks: TickTable) -> int:
+    """A refresh of our own is over before the next is wanted."""
+    return ticks.row_setup + ticks.refresh_low + ticks.precharge + SYNCHRONISER + 1
+
+
+# How `TickTable.service` and the least standby grow with each tick: after an access, and after a refresh.
+_AFTER_ACCESS = {"column": 1, "row_hold": 2, "write_lead": 1, "precharge": 1, "row_setup": 1}
+_AFTER_REFRESH = {"row_setup": 2, "refresh_low": 1, "precharge": 1}
+_STANDBY = {"row_setup": 2, "refresh_low": 1, "precharge": 1}
+
+
+def spare_by_service(facts: Facts) -> list[Judged]:
+    """Time by which `standby` is longer than it must be, once forced refresh, service and drought have had theirs."""
+    if facts.board.standby != "own-timer":
+        return []
+    timer, t, tick = timer_ticks(facts), facts.ticks, facts.tick_hi_ps
+    spare_ticks = timer.ticks.standby - _least_standby(t) - timer.missing_below_one
+    busy = (t.row_end + t.write_lead + t.row_hold + 2, t.row_setup + t.refresh_low + 1)
+    found: list[Judged] = []
+    for situation, one, growth in zip(("after access", "after refresh"), busy, (_AFTER_ACCESS, _AFTER_REFRESH), strict=True):
+        per_tick = {n: -tick * (growth.get(n, 0) + _STANDBY.get(n, 0)) for n in {**growth, **_STANDBY}}
+        margin = (spare_ticks + max(busy) - one) * tick
+        found.append(spare("standby", situation, margin, per_tick, facts.tick_source))
+    return found
 
 
 def timer_ticks(facts: Facts) -> TimerTicks:
@@ -134,7 +174,7 @@ def timer_ticks(facts: Facts) -> TimerTicks:
     cycles = max(chip.warm_up_cycles for chip in chips_of(facts))
     per_row = _interval_ps(facts) // (_rows(facts) * facts.tick_hi_ps)
     forced = per_row - t.service - _GUARD
-    least = t.row_setup + t.refresh_low + t.precharge + SYNCHRONISER + 1
+    least = _least_standby(t)
     for short_resets in (True, False):
         drought = drought_of(facts, reset_settle, short_resets)
         standby = forced - drought.ticks - t.row_setup - 2 * _SLACK
@@ -149,7 +189,7 @@ def timer_ticks(facts: Facts) -> TimerTicks:
         pause=max(pause, 1),
         warm_up_cycles=cycles,
     )
-    return TimerTicks(table, drought, missing)
+    return TimerTicks(table, drought, missing, max(0, 1 - standby))
 
 
 def refresh_bounds(facts: Facts, drought: Drought) -> RefreshBounds:

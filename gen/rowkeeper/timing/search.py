@@ -12,8 +12,10 @@ from dataclasses import dataclass, field, replace
 
 from rowkeeper.contract import TickTable
 from rowkeeper.reading.board import Chip, GivenTicks
+from rowkeeper.timing.arbitration import spare_by_notice
 from rowkeeper.timing.device import Facts, with_ticks
 from rowkeeper.timing.margins import Judged, judged
+from rowkeeper.timing.refresh_bounds import spare_by_service
 from rowkeeper.timing.scenes import chips_of
 
 __all__ = ["best_ticks", "first_guess", "sorted_margins"]
@@ -23,6 +25,7 @@ _REACH = 8  # how far from the guess each tick is tried
 _CHOSEN = ("mux", "column", "row_hold", "row_setup", "write_lead", "column_rest", "refresh_low", "precharge")
 _LEAST = {"mux": 1, "column": 2, "row_hold": 2, "row_setup": 1, "write_lead": 1, "column_rest": 2}
 _LEAST |= {"refresh_low": 2, "precharge": 3}
+_NEVER = 10**15  # a case that cannot happen has time without end
 _PATIENCE_CLOCKS = 1  # bus clocks to spare before an access is given up or a column strobe ended
 
 Line = tuple[int, tuple[tuple[int, int], ...]]  # constant, and picoseconds per tick of each of _CHOSEN that counts
@@ -41,7 +44,7 @@ class _Lines:
             m = one.margin
             if m.kind != "hard" or not any(name in one.per_tick for name in _CHOSEN):
                 continue
-            key = (m.symbol, m.cycle, m.neighbour, m.sense, m.note, one.case)
+            key = (m.symbol, m.cycle, m.neighbour, m.sense, *one.events, one.case)
             self.margins.setdefault(key, set()).add(_line(ticks, m.margin_ps, one.per_tick))
             guards = tuple(_line(ticks, c.total_ps, c.per_tick) for c in one.conditions)
             self.guards.setdefault(key, set()).add(guards)
@@ -77,9 +80,13 @@ def sorted_margins(found: Iterable[Judged]) -> tuple[int, ...]:
 def _vector(groups: list[Group], at: tuple[int, ...]) -> list[int]:
     values: list[int] = []
     for lines, guards, count in groups:
-        if any(_at(guard, at) < 0 for guard in guards):
-            continue
-        values += [max(_at(line, at) for line in lines)] * count
+        value = _NEVER
+        if not guards or not any(_at(guard, at) < 0 for guard in guards):
+            value = _at(lines[0], at) if len(lines) == 1 else max([_at(line, at) for line in lines])
+        if count == 1:
+            values.append(value)
+        else:
+            values += [value] * count
     values.sort()
     return values
 
@@ -140,7 +147,8 @@ def best_ticks(facts: Facts, given: GivenTicks) -> TickTable:
     lines = _Lines()
     met: dict[TickTable, tuple[tuple[int, ...], int]] = {}
     for _ in range(_ROUNDS):
-        found = judged(with_ticks(facts, ticks))
+        now = with_ticks(facts, ticks)
+        found = [*judged(now), *spare_by_notice(now), *spare_by_service(now)]
         met[ticks] = sorted_margins(found), -sum(getattr(ticks, name) for name in _CHOSEN)
         lines.learn(ticks, found)
         ticks = _patient(facts, _pick(lines, ticks, given), found)
@@ -171,7 +179,7 @@ def _pick(lines: _Lines, start: TickTable, given: GivenTicks) -> TickTable:
     score = _score(groups, best)
     columns = [given.column] if given.column is not None else _span(best[1], _LEAST["column"])
     for column in columns:
-        choice = _settle(groups, (best[0], column, *best[2:]), given)
+        choice = _settle(groups, (best[0], column, *best[2:]), best, given)
         one = _score(groups, choice)
         if one > score:
             best, score = choice, one
@@ -182,29 +190,32 @@ def _span(ticks: int, least: int) -> range:
     return range(max(least, ticks - _REACH), ticks + _REACH + 1)
 
 
-def _settle(groups: list[Group], at: tuple[int, ...], given: GivenTicks) -> tuple[int, ...]:
+def _settle(groups: list[Group], at: tuple[int, ...], near: tuple[int, ...], given: GivenTicks) -> tuple[int, ...]:
     """Every tick but the column's, each at its best while the others stay, until nothing moves."""
     column = at[1]
-    at = (min(at[0], column - 1), *at[1:])
-    if given.mux is not None:
-        at = (given.mux, *at[1:])
-    if given.row_end is not None:
-        at = (*at[:2], max(_LEAST["row_hold"], given.row_end - column), *at[3:])
-    score = _score(groups, at)
+    mux = min(at[0], column - 1) if given.mux is None else given.mux
+    hold = at[2] if given.row_end is None else max(_LEAST["row_hold"], given.row_end - column)
+    at = (mux, column, hold, *at[3:])
+    open_ticks = [i for i, name in enumerate(_CHOSEN) if name != "column" and not _given(given, name)]
+    # Margins that a tick does not move are the same on both sides of the comparison and fall out of it.
+    moved = {i: [group for group in groups if _moves(group, i)] for i in open_ticks}
     before: tuple[int, ...] | None = None
     while at != before:
         before = at
-        for i, name in enumerate(_CHOSEN):
-            fixed = name == "column" or getattr(given, {"row_hold": "row_end"}.get(name, name), None) is not None
-            if fixed:
-                continue
-            values = range(1, column) if name == "mux" else _span(at[i], _LEAST[name])
-            for value in values:
-                choice = (*at[:i], value, *at[i + 1 :])
-                one = _score(groups, choice)
-                if one > score:
-                    at, score = choice, one
+        for i in open_ticks:
+            values = range(1, column) if i == 0 else _span(near[i], _LEAST[_CHOSEN[i]])
+            choices = [(*at[:i], value, *at[i + 1 :]) for value in values]
+            at = max([at, *choices], key=lambda choice, i=i: _score(moved[i], choice))  # type: ignore[misc]
     return at
+
+
+def _given(given: GivenTicks, name: str) -> bool:
+    return getattr(given, {"row_hold": "row_end"}.get(name, name), None) is not None
+
+
+def _moves(group: Group, i: int) -> bool:
+    lines, guards, _ = group
+    return any(index == i for line in (*lines, *guards) for index, _ in line[1])
 
 
 def _score(groups: list[Group], at: tuple[int, ...]) -> tuple[list[int], int]:
