@@ -243,4 +243,5 @@ FACTS = SheetFacts(
     ),
     not_proven=NOT_PROVEN,
     open_items=(),
+    notes=("tRC: the sheet promises 375 ns up to 70 °C",),
 )

@@ -59,3 +59,9 @@ def test_hanging_indent() -> None:
     lines = paragraph("word " * 30, "- ", "  ")
     assert lines[0].startswith("- word")
     assert lines[1].startswith("  word")
+
+
+def test_a_long_word_is_kept_whole_where_another_column_can_give_way() -> None:
+    """A name that is cut in two cannot be searched for."""
+    lines = table(("name", "text"), [("address-captured", "word " * 40), ("x " * 40, "word")])
+    assert [line for line in lines if "address-captured" in line] != []

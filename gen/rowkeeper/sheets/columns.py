@@ -86,12 +86,23 @@ def _filled(cell: str, tail: int | None) -> str:
 
 
 def _widths(grid: Sequence[Sequence[str]]) -> list[int]:
-    """Natural widths; where they do not fit, the widest column gives way, one step at a time."""
-    widths = [max(1, *(shown_width(row[column]) for row in grid)) for column in range(len(grid[0]))]
+    """Natural widths; where they do not fit, the widest column gives way, down to its longest word if that helps."""
+    columns = [[row[column] for row in grid] for column in range(len(grid[0]))]
+    widths = [max(1, *map(shown_width, cells)) for cells in columns]
+    words = [max(map(shown_width, " ".join(cells).split(" "))) for cells in columns]
     room = WIDTH - len(_GAP) * (len(widths) - 1)
-    while sum(widths) > room and max(widths) > _LEAST:
-        widths[widths.index(max(widths))] -= 1
-    return widths
+    return _squeezed(_squeezed(widths, words, room), [_LEAST] * len(widths), room)
+
+
+def _squeezed(widths: Sequence[int], floors: Sequence[int], room: int) -> list[int]:
+    """Widths made smaller until they fit, the widest first, none below its floor."""
+    fitted = list(widths)
+    while sum(fitted) > room:
+        yielding = [column for column, width in enumerate(fitted) if width > floors[column]]
+        if not yielding:
+            break
+        fitted[max(yielding, key=lambda column: fitted[column])] -= 1
+    return fitted
 
 
 def _row(cells: Sequence[str], widths: Sequence[int], rights: frozenset[int]) -> list[str]:

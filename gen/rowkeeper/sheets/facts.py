@@ -69,6 +69,7 @@ class SheetFacts:
     assumed: tuple[str, ...]
     not_proven: tuple[str, ...]
     open_items: tuple[str, ...]
+    notes: tuple[str, ...]
 
 
 def board_stamp(board: Board, version: str) -> Stamp:
@@ -101,8 +102,9 @@ def sheet_facts(
         order=_order(board),
         chips=_chip_notes(board),
         assumed=_lines(board.bus.assumptions.values()),
-        not_proven=(*NOT_PROVEN, *(one_line(f"{note.topic}: {note.text}") for note in notes)),
+        not_proven=NOT_PROVEN,
         open_items=_open_items(verdict.findings),
+        notes=_lines(f"{note.topic}: {note.text}" for note in notes),
     )
 
 

@@ -18,7 +18,7 @@ from rowkeeper.sheets.plain import net_label, one_line
 __all__ = ["sheet_html"]
 
 _BEFORE_UNIT = re.compile(r"(?<=\d) (?=(?:[mk]?V|[numk]?s|[pnu]F|[kM]?ohm|[kMG]?Hz|[KM]iB|ppm|%)\b)")
-_LETTERS_A_LINE = 48  # of a text column of the second page
+_LETTERS_A_LINE = 46  # of a text column of the second page
 _TEXT_COLUMNS = 3
 _FIXED_SPACE = "\N{NO-BREAK SPACE}"
 
@@ -63,11 +63,11 @@ def sheet_html(facts: SheetFacts) -> str:
 
 def _pages(facts: SheetFacts, rows: int, fixed: int) -> int:
     """Two pages, or three where the texts would run over the foot of the second. Tenths of a millimetre, measured."""
-    room = 2650 - 37 * rows - 30 * (2 + fixed // 2)
-    texts = (facts.order, facts.chips, facts.assumed, (*facts.open_items, *facts.not_proven))
+    room = 2570 - 35 * rows - 14 * (fixed + 1)
+    texts = (facts.order, facts.chips, facts.assumed, (*facts.open_items, *facts.not_proven), facts.notes)
     lines = sum(-(-len(item) // _LETTERS_A_LINE) for items in texts for item in items)
     spaces = sum(len(items) for items in texts)
-    needed = (30 * lines + 4 * spaces + 60 * len(texts)) // _TEXT_COLUMNS
+    needed = (29 * lines + 4 * spaces + 60 * len(texts)) // _TEXT_COLUMNS
     return 2 if needed <= room else 3
 
 
