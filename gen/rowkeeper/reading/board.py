@@ -187,6 +187,9 @@ class Device:
     supplies: tuple[str, ...]
     notes: tuple[str, ...] = ()
     pins_source: Source = _UNSOURCED
+    pads_together: Figure | None = (
+        None  # one input pad and one output pad, where that is less than the two bounds added
+    )
 
 
 @dataclass(frozen=True, slots=True)

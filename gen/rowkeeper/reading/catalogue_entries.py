@@ -226,6 +226,7 @@ def read_device(root: Node, problems: Problems) -> tuple[Device, ...]:
         cells=_number(router, "cells"),
         pins=pins,
         **{name: figures[name] for name in _DEVICE_FIGURES},
+        pads_together=figures.get("pads_together"),
         levels=levels,
         configuration_typical_ps=setup.take("typical", time_ps, 0),
         configuration_source=read_source(setup.node("source"), sources, problems),

@@ -88,11 +88,13 @@ def _device_rows(device: Device) -> Iterator[FigureRow]:
     for figure in (
         device.input_pad,
         device.output_pad,
+        device.pads_together,
         device.before_routing_input,
         device.before_routing_output,
         device.flip_flop_window,
     ):
-        yield _figure(figure)
+        if figure is not None:
+            yield _figure(figure)
     typical = f"typical {_number(device.configuration_typical_ps, 10**9)} ms, no limit given"
     yield _row("configuration", "", "", "", "", device.configuration_source, typical)
 
