@@ -1,7 +1,8 @@
 """Quiet bus: when no access can begin, and fair notice before one can again.
 
-Grant: from BUSACK falling until BUSREQ rises, which comes before BUSACK rises. Reset: from the moment RESET has been
-low for `reset_settle` ticks until it rises. The bus's reset goes nowhere else: it clears no counter and no state.
+Grant: from BUSACK falling until BUSREQ rises, which comes before BUSACK rises. BUSREQ may fall again, for the next
+grant, while BUSACK is still on its way up: a grant that has begun to end stays ended. Reset: from the moment RESET has
+been low for `reset_settle` ticks until it rises. The bus's reset goes nowhere else: it clears no counter and no state.
 """
 
 from amaranth.hdl import Const, Module, Signal
@@ -24,6 +25,7 @@ class QuietBus(Component):
         self._settle = reset_settle
         self._has_busreq = has_busreq
         self.held = Signal(range(reset_settle + 1))
+        self.ending = Signal()  # BUSREQ has risen in this grant
 
     def elaborate(self, platform: object) -> Module:
         m = Module()
@@ -31,9 +33,10 @@ class QuietBus(Component):
         asked = self.busreq if self._has_busreq else Const(1)
         m.d.comb += [
             settled.eq(self.held == self._settle),
-            self.quiet.eq((self.reset & settled) | (self.busack & asked)),
+            self.quiet.eq((self.reset & settled) | (self.busack & asked & ~self.ending)),
             self.granted.eq(self.busack),
         ]
+        m.d.sync += self.ending.eq(self.busack & (self.ending | ~asked))
         with m.If(~self.reset):
             m.d.sync += self.held.eq(0)
         with m.Elif(~settled):
