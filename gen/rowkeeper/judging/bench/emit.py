@@ -17,7 +17,7 @@ __all__ = ["emit_bench"]
 
 _PLAIN = ("checks.vh", "memory.vh", "board.vh", "bus.vh", "program.vh", "run.sh")
 # What is run again at the ends of every window: short, and it holds every kind of cycle.
-_AT_THE_ENDS = ("mix", "reset")
+_AT_THE_ENDS = ("mix",)
 
 
 def emit_bench(board: Board, design: Design, windows: Mapping[str, Window]) -> Mapping[str, bytes]:

@@ -28,7 +28,7 @@ int main(int count, char **argument) {
   board->start(seed, corner, phase.below(DEVICE_SLOW_FS / 1000));
   bus->start(seed, corner);
   memory->log = bus->log = argument[5][0] == '1';
-  Program program(*bus, seed, argument[4][0] == '1');
+  Program program(*bus, seed, argument[4][0] == '1', !strcmp(argument[1], "march-c"));
   program.run(argument[1]);
   memory->finish(bus->now);
   return result(*checks, *board, *bus);

@@ -68,6 +68,8 @@ struct Memory {
     } else if (column_held) {
       if (t - cas_fell <= -LIMIT_tASC) {
         column = to & (COLUMNS - 1);  // a negative set-up time lets the column come after its strobe
+      } else if (t - cas_fell <= LIMIT_tCAH / 2) {  // nearer to its strobe than to the end of its hold: late
+        if (!checks.least(CHECK_tASC, cas_fell - t, LIMIT_tASC)) spoil();
       } else {
         column_held = false;
         if (!checks.least(CHECK_tCAH, t - cas_fell, LIMIT_tCAH)) spoil();

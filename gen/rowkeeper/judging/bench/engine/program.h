@@ -9,10 +9,9 @@ struct Program {
   unsigned columns, cells, code;
   bool full;
 
-  Program(Bus &b, uint32_t seed, bool everything) : bus(b), code(0), full(everything) {
+  Program(Bus &b, uint32_t seed, bool everything, bool marching) : bus(b), code(0), full(everything) {
     chance.start(seed, 3);
-    columns = full ? COLUMNS : FEW_COLUMNS;
-    if (columns > COLUMNS) columns = COLUMNS;
+    columns = full ? COLUMNS : marching ? FEW_COLUMNS : FEWER_COLUMNS;
     cells = columns * ROWS;
   }
 
