@@ -94,10 +94,10 @@ class TickTable:
         """Most ticks between falls of the refresh strobe on a bus that is never `drought_ticks` without relief.
 
         Relief: a refresh request in its turn, or a quiet tick with the sequencer idle. Worst path: relief one tick
-        before `standby` does nothing; the next comes a whole drought later, while the strobes have just begun to rest.
-        The claim `legal-bound` proves it, for `forced` at least as large.
+        before `standby` does nothing; the next is a request a whole drought later, seen in its turn when the strobes
+        have rested two ticks. The claim `legal-bound` proves it, for `forced` at least as large.
         """
-        return self.standby + drought_ticks + self.rest + self.row_setup
+        return self.standby + drought_ticks + max(self.rest - 4, 0) + 2 + self.row_setup
 
 
 @dataclass(frozen=True, slots=True)
@@ -252,6 +252,8 @@ class Plan:
     def holds(self) -> bool:
         sums = all(a.margin_ps >= 0 for a in self.arbitration)
         hard = all(m.margin_ps >= 0 for m in self.margins if m.kind == "hard")
+        if any(note.topic == "refused" for note in self.notes):
+            return False
         return sums and hard and self.refresh.any_age_ps <= self.refresh.interval_ps
 
 

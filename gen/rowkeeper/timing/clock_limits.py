@@ -1,7 +1,7 @@
 """The bus clock against the processor's own limits, before anything else is believed.
 
 Takes the board's clock and the bus grade; gives margins and notes. A grade is rated by nominal frequency, so TcC is judged on and the widths on their shares of the nominal period; where the tolerance dips below, a note says so. Duty and
-edges are judged at their worst.
+edges are judged at their worst. A limit that is met is a reference: what is left of it is no margin of the plan.
 """
 
 from dataclasses import replace
@@ -72,16 +72,17 @@ def _margins(figure: Figure, least: list[Term] | None, most: list[Term] | None) 
 def _margin(figure: Figure, sense: str, required: int, terms: list[Term]) -> Margin:
     total = sum(term.used_ps for term in terms)
     lower = sense == "min"
+    margin = total - required if lower else required - total
     return Margin(
         figure.symbol,
         "bus clock",
         "",
         "min" if lower else "max",
-        "hard",
+        "hard" if margin < 0 else "reference",
         required,
         total if lower else None,
         None if lower else total,
-        total - required if lower else required - total,
+        margin,
         tuple(terms),
         figure.source,
         figure.source.mark is Mark.MEMORY,

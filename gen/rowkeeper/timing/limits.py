@@ -136,7 +136,8 @@ def row_cycle(scene: Scene, facts: Facts) -> list[Rule]:
     figure = scene.chip.limits.get("tRC")
     if figure is None or figure.lo_ps is None or scene.cycle == "any access":
         return []
-    return [Rule("tRC", "row falls", "next row falls", "min", _promised(figure), note="one random cycle")]
+    events = ("MREQf", "next MREQf") if facts.ticks.style == "straight" else ("row falls", "next row falls")
+    return [Rule("tRC", *events, "min", _promised(figure), note="one random cycle")]
 
 
 def column_delay(scene: Scene, facts: Facts) -> list[Rule]:
@@ -224,7 +225,7 @@ def column_capped(scene: Scene, facts: Facts) -> list[Rule]:
 
 def ready(scene: Scene, facts: Facts) -> list[Rule]:
     """Back at rest before the next request can be taken: its strobe is on time and its address was followed."""
-    if scene.neighbour == "interrupt acknowledge":
+    if scene.neighbour == "interrupt acknowledge" or facts.ticks.style == "straight":
         return []
     note = "strobe rested before the next request is taken"
     row = f"row {note}"

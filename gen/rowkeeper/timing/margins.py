@@ -33,12 +33,12 @@ class Judged:
     conditions: tuple[Bound, ...]
 
 
-def judged(facts: Facts) -> list[Judged]:
-    """Every rule in every scene."""
+def judged(facts: Facts, *, whole: bool = False) -> list[Judged]:
+    """Every rule in every scene. `whole`: the end of the window that does not decide is worked out as well."""
     found: list[Judged] = []
     for scene in scenes(facts):
         for rule in rules_of(scene, facts):
-            one = _judge(scene, rule)
+            one = _judge(scene, rule, whole)
             if one is not None:
                 found.append(one)
     return found
@@ -50,7 +50,7 @@ def spare(symbol: str, situation: str, margin_ps: int, per_tick: Mapping[str, in
     return Judged(m, (situation, symbol), "", per_tick, ())
 
 
-def _judge(scene: Scene, rule: Rule) -> Judged | None:
+def _judge(scene: Scene, rule: Rule, whole: bool) -> Judged | None:
     network = scene.network
     lower = rule.sense == "min"
     bound = network.earliest(rule.earlier, rule.later) if lower else network.latest(rule.earlier, rule.later)
@@ -60,6 +60,7 @@ def _judge(scene: Scene, rule: Rule) -> Judged | None:
     if bound is None or required is None:
         return None
     margin = bound.total_ps - required if lower else required - bound.total_ps
+    other = _other_end(scene, rule) if whole else None
     record = Margin(
         rule.symbol,
         scene.cycle,
@@ -67,8 +68,8 @@ def _judge(scene: Scene, rule: Rule) -> Judged | None:
         rule.sense,
         rule.kind,
         required,
-        bound.total_ps if lower else None,
-        None if lower else bound.total_ps,
+        bound.total_ps if lower else other,
+        other if lower else bound.total_ps,
         margin,
         bound.terms,
         rule.required.source,
@@ -80,6 +81,15 @@ def _judge(scene: Scene, rule: Rule) -> Judged | None:
     for name, times in rule.required.counts:
         per_tick[name] = per_tick.get(name, 0) - times * rule.required.tick_hi_ps
     return Judged(_eased(record, scene.chip), (rule.earlier, rule.later), scene.case, per_tick, scene.conditions)
+
+
+def _other_end(scene: Scene, rule: Rule) -> int | None:
+    """The end of the window that the limit does not ask for."""
+    if rule.sense == "min":
+        bound = scene.network.latest(rule.earlier, rule.later)
+    else:
+        bound = scene.network.earliest(rule.earlier, rule.later)
+    return None if bound is None else bound.total_ps
 
 
 def _tainted(terms: Iterable[Term], source: Source) -> bool:

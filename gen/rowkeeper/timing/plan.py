@@ -17,6 +17,8 @@ from rowkeeper.timing.search import best_ticks, first_guess
 
 __all__ = ["design_of", "judge", "settle"]
 
+REFUSED = "refused"  # topic of a note that keeps a plan from holding
+
 
 def settle(board: Board, delays: Delays) -> Plan:
     """Choose the ticks the board file leaves open, and judge them."""
@@ -41,10 +43,11 @@ def _judge(facts: Facts) -> Plan:
     drought = _drought(facts)
     bounds = refresh_bounds(facts, drought)
     legal = _legal_margins(facts, drought, bounds.legal_gap_ticks)
-    margins = [*clock_margins(board), *worst_of(judged(facts)), *legal]
+    margins = [*clock_margins(board), *worst_of(judged(facts, whole=True)), *legal]
     sums = arbitration(facts)
     unused = all(m.margin_ps >= 0 for m in legal)
     notes = [
+        *_refused(board, ticks),
         *clock_notes(board),
         *margin_notes(facts, margins),
         *_drought_notes(facts, drought),
@@ -54,6 +57,23 @@ def _judge(facts: Facts) -> Plan:
     return Plan(
         ticks, facts.tick_lo_ps, facts.tick_hi_ps, tuple(order), sums, bounds, tuple(notes), facts.delays.routed
     )
+
+
+def _refused(board: Board, ticks: TickTable) -> list[Note]:
+    """What no choice of ticks can mend."""
+    texts: list[str] = []
+    if ticks.style == "straight":
+        reasons = ["only counted strobes are generated"]
+        if board.at_worst.reset_max_ps != 0 and not board.at_worst.reset_aligned:
+            reasons.append("a reset that keeps no step with the clock would cut a strobe short that is passed straight on")
+        if board.standby == "own-timer":
+            reasons.append("an access could begin in the middle of a refresh of our own")
+        texts.append(f"strobe style straight: {'; '.join(reasons)}. Leave the style to `auto` or give `counted`")
+    if len(board.banks) > 1:
+        texts.append(f"{len(board.banks)} banks: one bank is generated; give each bank a board file of its own")
+    if board.row_from != "counter":
+        texts.append(f"rows from {board.row_from}: only `counter` is generated; set refresh.row_from to counter")
+    return [Note(REFUSED, text) for text in texts]
 
 
 def _drought(facts: Facts) -> Drought:

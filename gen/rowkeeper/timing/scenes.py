@@ -9,10 +9,9 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 
 from rowkeeper.reading.board import Chip
-from rowkeeper.timing.bus import CYCLES, FOLLOWERS, BusCycles, CycleKind, request_clock
+from rowkeeper.timing.bus import CYCLES, FOLLOWERS, BusCycles, CycleKind, from_figure, request_clock
 from rowkeeper.timing.device import SYNCHRONISER, Facts, counted, drive, sample, skewed
 from rowkeeper.timing.network import SAME, Bound, Network, Promise
-from rowkeeper.timing.bus import from_figure
 from rowkeeper.timing.paths import part_of, travel
 
 __all__ = ["Scene", "chips_of", "scenes"]
@@ -44,12 +43,26 @@ def chips_of(facts: Facts) -> tuple[Chip, ...]:
 def scenes(facts: Facts) -> Iterator[Scene]:
     """Every scene that can happen."""
     for chip in chips_of(facts):
-        yield _whatever(facts, chip)
-        yield _own_refreshes(facts, chip)
+        if not _straight(facts):
+            yield _whatever(facts, chip)
+            yield _own_refreshes(facts, chip)
         for kind in CYCLES:
             for follower in FOLLOWERS[kind]:
                 for waits in _waits(facts, kind):
                     yield from _pair(facts, chip, kind, follower, waits)
+
+
+def _straight(facts: Facts) -> bool:
+    """Whether the row strobe is MREQ itself, passed through the device without a clock."""
+    return facts.ticks.style == "straight"
+
+
+def _row_strobe(network: Network, facts: Facts, edge: str, line: str, event: str) -> None:
+    """The row strobe moves with a clock edge of the device, or with the bus where it is passed straight through."""
+    if _straight(facts):
+        travel(network, line, event, facts.paths["mreq_n"].then(facts.paths["ras_n"]))
+    else:
+        drive(network, facts, "ras_n", edge, event)
 
 
 def _waits(facts: Facts, kind: CycleKind) -> tuple[int, ...]:
@@ -106,12 +119,12 @@ def _refresh(network: Network, facts: Facts, prefix: str) -> None:
         network.promise("on time", "turn", SAME)
     span = counted(facts, "row_setup")
     network.promise(f"{prefix}turn", f"{prefix}row falls", span)
-    drive(network, facts, "ras_n", f"{prefix}row falls", f"{prefix}RASf")
+    _row_strobe(network, facts, f"{prefix}row falls", f"{prefix}MREQf", f"{prefix}RASf")
     if prefix:
         return
     drive(network, facts, "ma", "turn", "row address")
     network.promise("row falls", "row rises", counted(facts, "refresh_low"))
-    drive(network, facts, "ras_n", "row rises", "RASr")
+    _row_strobe(network, facts, "row rises", "MREQr", "RASr")
     network.promise("row rises", "address released", counted(facts, plus=1, at_least=True))
     drive(network, facts, "ma", "address released", "row address ends")
 
@@ -121,7 +134,7 @@ def _access(scene: Scene, facts: Facts, kind: CycleKind) -> Iterator[Scene]:
     network = scene.network
     write = kind == "memory write"
     network.promise("on time", "row falls", SAME)
-    drive(network, facts, "ras_n", "row falls", "RASf")
+    _row_strobe(network, facts, "row falls", "MREQf", "RASf")
     _row(network, facts)
     network.promise("row falls", "column selected", counted(facts, "mux"))
     drive(network, facts, "ma", "column selected", "column address")
@@ -195,10 +208,10 @@ def _column(scene: Scene, facts: Facts, write: bool) -> None:
         network.promise("go", "column falls", SAME)
     drive(network, facts, "cas_n", "column falls", "CASf")
     network.promise("column falls", "row rises", counted(facts, "row_hold"))
-    drive(network, facts, "ras_n", "row rises", "RASr")
+    _row_strobe(network, facts, "row rises", "MREQr", "RASr")
     if write:
         skewed(network, facts, ("we_n", "WEf"), ("cas_n", "CASf"), lead)
-    if by_tick:
+    if by_tick and not _straight(facts):
         span = counted(facts, "column", "write_lead") if write else counted(facts, "column")
         skewed(network, facts, ("ras_n", "RASf"), ("cas_n", "CASf"), span)
     network.promise("row rises", "row held on", counted(facts, plus=1))
@@ -263,7 +276,7 @@ def _next_cycle(network: Network, facts: Facts, follower: CycleKind, second: int
 
 
 def _next_access(network: Network, facts: Facts, write: bool) -> None:
-    drive(network, facts, "ras_n", "next row falls", "next RASf")
+    _row_strobe(network, facts, "next row falls", "next MREQf", "next RASf")
     network.promise("next row falls", "next go", counted(facts, "column", at_least=True))
     if write:
         network.promise("next go", "next column falls", counted(facts, "write_lead", at_least=True))
@@ -279,6 +292,8 @@ def _follow(network: Network, facts: Facts, last: str) -> None:
     """Rest kept by the sequencer before the next strobe, whatever the bus asks; the address outputs follow at once."""
     network.promise(last, "address followed", counted(facts, plus=1))
     drive(network, facts, "ma", "address followed", "next row address")
+    if _straight(facts):  # nothing holds the next row strobe back
+        return
     for start in ("next turn", "next row falls"):
         if network.holds(start):
             network.promise("row rises", start, counted(facts, "precharge", at_least=True))

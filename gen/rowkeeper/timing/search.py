@@ -25,6 +25,7 @@ _REACH = 8  # how far from the guess each tick is tried
 _CHOSEN = ("mux", "column", "row_hold", "row_setup", "write_lead", "column_rest", "refresh_low", "precharge")
 _LEAST = {"mux": 1, "column": 2, "row_hold": 2, "row_setup": 1, "write_lead": 1, "column_rest": 2}
 _LEAST |= {"refresh_low": 2, "precharge": 3}
+_HOPELESS = -250_000  # ticks cannot mend what misses by more: all such margins count alike
 _NEVER = 10**15  # a case that cannot happen has time without end
 _PATIENCE_CLOCKS = 1  # bus clocks to spare before an access is given up or a column strobe ended
 
@@ -74,7 +75,7 @@ def _at(line: Line, at: tuple[int, ...]) -> int:
 
 def sorted_margins(found: Iterable[Judged]) -> tuple[int, ...]:
     """Hard margins, worst first: what one plan is compared to another by."""
-    return tuple(sorted(one.margin.margin_ps for one in found if one.margin.kind == "hard"))
+    return tuple(sorted(max(one.margin.margin_ps, _HOPELESS) for one in found if one.margin.kind == "hard"))
 
 
 def _vector(groups: list[Group], at: tuple[int, ...]) -> list[int]:
@@ -83,6 +84,7 @@ def _vector(groups: list[Group], at: tuple[int, ...]) -> list[int]:
         value = _NEVER
         if not guards or not any(_at(guard, at) < 0 for guard in guards):
             value = _at(lines[0], at) if len(lines) == 1 else max([_at(line, at) for line in lines])
+            value = max(value, _HOPELESS)
         if count == 1:
             values.append(value)
         else:
@@ -145,16 +147,23 @@ def best_ticks(facts: Facts, given: GivenTicks) -> TickTable:
     """The best table found; its margins may still be negative, and then they are the least bad ones met."""
     ticks = first_guess(facts, given)
     lines = _Lines()
+    # What even the shortest ticks cannot keep is refused; it does not take time away from the limits that can be kept.
+    kept = {one.events for one in _spares(with_ticks(facts, ticks)) if one.margin.margin_ps >= 0}
     met: dict[TickTable, tuple[tuple[int, ...], int]] = {}
     for _ in range(_ROUNDS):
         now = with_ticks(facts, ticks)
-        found = [*judged(now), *spare_by_notice(now), *spare_by_service(now)]
+        found = [*judged(now), *(one for one in _spares(now) if one.events in kept)]
         met[ticks] = sorted_margins(found), -sum(getattr(ticks, name) for name in _CHOSEN)
         lines.learn(ticks, found)
         ticks = _patient(facts, _pick(lines, ticks, given), found)
         if ticks in met:
             break
     return max(met, key=lambda table: met[table])
+
+
+def _spares(facts: Facts) -> list[Judged]:
+    """Time to spare beside the limits: after a notice, and in the refresh timer."""
+    return [*spare_by_notice(facts), *spare_by_service(facts)]
 
 
 def _patient(facts: Facts, ticks: TickTable, found: Iterable[Judged]) -> TickTable:
