@@ -4,7 +4,7 @@ from dataclasses import replace
 
 import pytest
 
-from rowkeeper.contract import BenchOutcome, Finding, Status
+from rowkeeper.contract import BenchOutcome, Finding, Note, Status
 from rowkeeper.judging import verdict as v
 from sheets.records import ARBITRATION, BENCH, CLAIM, FIT, PLAN, REFRESH, TASC, TRCD, TRP
 
@@ -79,6 +79,19 @@ def test_arbitration_and_refresh_can_fail() -> None:
     assert [f.margin_ps for f in old if f.status is Status.FAILED] == [-1]
 
 
+def test_refusals_fail() -> None:
+    """What the plan itself refuses cannot pass, whatever its margins."""
+    refused = replace(PLAN, notes=(Note("refused", "K_any is longer than the interval"), Note("other", "x")))
+    failed = [f for f in v.plan_findings(refused) if f.status is Status.FAILED]
+    assert [(f.name, f.detail) for f in failed] == [("refusal 1", "K_any is longer than the interval")]
+
+
+def test_plan_and_verdict_never_disagree() -> None:
+    """A plan that does not hold fails, and one that holds has no failure."""
+    for plan in (PLAN, replace(PLAN, margins=(TRP,)), replace(PLAN, refresh=replace(REFRESH, any_age_ps=10**10))):
+        assert plan.holds == all(f.status is Status.PASSED for f in v.plan_findings(plan))
+
+
 def test_a_proof_that_shows_something_passes() -> None:
     """Assertions, certificate, cover and spoiled design."""
     (finding,) = v.claim_findings([CLAIM])
@@ -90,6 +103,7 @@ def test_a_proof_that_shows_something_passes() -> None:
     ("change", "why"),
     [
         ({"assertions": 0}, "the proof held no assertion"),
+        ({"certificate": None}, "no second solver re-checked the proof"),
         ({"covered": False}, "the situation it speaks of was never reached"),
         ({"spoiled_caught": False}, "the spoiled design passed as well"),
     ],

@@ -1,8 +1,8 @@
 """The verdict: every check of a run as one list, and the rule that what did not run is not passed.
 
-Takes a plan and the outcomes of claims, bench and fit; gives a `Verdict`. A proof without an assertion, a cover that
-was not reached, a spoiled design that was not caught and a bench without a check all count as not run: they show
-nothing. Must not know how a margin was found or what a claim means.
+Takes a plan and the outcomes of claims, bench and fit; gives a `Verdict`. A proof without an assertion or
+certificate, a cover that was not reached, a spoiled design that was not caught and a bench without a check all count as
+not run: they show nothing. Must not know how a margin was found or what a claim means.
 """
 
 from collections.abc import Iterable, Sequence
@@ -30,6 +30,8 @@ __all__ = [
     "plan_findings",
     "verdict_of",
 ]
+
+_REFUSED = "refused"  # topic of a note that keeps a plan from holding
 
 
 def verdict_of(findings: Iterable[Finding], expected: Sequence[tuple[FindingGroup, str]] = ()) -> Verdict:
@@ -60,7 +62,16 @@ def plan_findings(plan: Plan, routed_wanted: bool = False) -> tuple[Finding, ...
         margins = [Finding("margin", "all limits", Status.NOT_RUN, "no margin was computed")]
     if routed_wanted and not plan.routed:
         margins.append(Finding("margin", "routed delays", Status.NOT_RUN, "judged before routing only"))
-    return (*margins, *map(_arbitration, plan.arbitration), _refresh(plan.refresh))
+    found = (*margins, *_refusals(plan), *map(_arbitration, plan.arbitration), _refresh(plan.refresh))
+    if plan.holds or any(finding.status is Status.FAILED for finding in found):
+        return found
+    return (*found, Finding("margin", "the plan", Status.FAILED, "the plan says of itself that it does not hold"))
+
+
+def _refusals(plan: Plan) -> list[Finding]:
+    """What the plan says cannot be built, each as a failure of its own."""
+    texts = [note.text for note in plan.notes if note.topic == _REFUSED]
+    return [Finding("margin", f"refusal {number}", Status.FAILED, text) for number, text in enumerate(texts, 1)]
 
 
 def _symbol(margins: Sequence[Margin]) -> Finding:
@@ -100,8 +111,7 @@ def _claim(outcome: ClaimOutcome) -> Finding:
     hollow = _hollow(outcome)
     if hollow:
         return Finding("claim", claim_name(outcome), Status.NOT_RUN, hollow)
-    certificate = "" if outcome.certificate is None else f", certificate of {outcome.certificate} clauses re-checked"
-    detail = f"{outcome.assertions} assertions{certificate}"
+    detail = f"{outcome.assertions} assertions, certificate of {outcome.certificate} clauses re-checked"
     return Finding("claim", claim_name(outcome), Status.PASSED, detail)
 
 
@@ -109,6 +119,8 @@ def _hollow(outcome: ClaimOutcome) -> str:
     """Why a proof that succeeded shows nothing; empty where it does show something."""
     if outcome.assertions < 1:
         return "the proof held no assertion"
+    if outcome.certificate is None:
+        return "no second solver re-checked the proof"
     if outcome.covered is False:
         return "the situation it speaks of was never reached"
     if outcome.spoiled_caught is False:

@@ -65,7 +65,7 @@ def verdict_json(
     body: dict[str, Json] = {
         "findings": plain_value(verdict.findings),
         "plan": None if plan is None else _plan(plan),
-        "claims": plain_value(tuple(claims)),
+        "claims": [_without(claim, "trace_vcd") for claim in claims],
         "bench": plain_value(tuple(bench)),
         "fit": None if fit is None else _fit(fit),
     }
@@ -74,15 +74,13 @@ def verdict_json(
 
 def _plan(plan: Plan) -> Json:
     """A plan without the terms of its margins, which `plan_json` has."""
-    whole = plain_value(plan)
-    assert isinstance(whole, dict)
-    return whole | {"margins": [_margin(margin) for margin in plan.margins]}
+    return _without(plan, "margins") | {"margins": [_without(margin, "terms") for margin in plan.margins]}
 
 
-def _margin(margin: Margin) -> Json:
-    whole = plain_value(margin)
-    assert isinstance(whole, dict)
-    return {name: value for name, value in whole.items() if name != "terms"}
+def _without(record: Plan | Margin | ClaimOutcome, *names: str) -> dict[str, Json]:
+    """A record as JSON, some of its fields left out: traces have files of their own."""
+    chosen = [field.name for field in fields(record) if field.name not in names]
+    return {name: plain_value(getattr(record, name)) for name in chosen}
 
 
 def _fit(fit: FitOutcome) -> Json:
