@@ -97,7 +97,7 @@ class TickTable:
         before `standby` does nothing; the next is a request a whole drought later, seen in its turn when the strobes
         have rested two ticks. The claim `legal-bound` proves it, for `forced` at least as large.
         """
-        return self.standby + drought_ticks + max(self.rest - 4, 0) + 2 + self.row_setup
+        return self.standby + drought_ticks + max(self.rest - 4, 0) + 3 + self.row_setup
 
 
 @dataclass(frozen=True, slots=True)

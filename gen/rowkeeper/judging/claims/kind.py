@@ -23,7 +23,7 @@ class Kind(Checker):
         " after an M1 pulse is its refresh."
     )
     assertions = 2
-    assumptions = ("m1-before-mreq", "width", "one-fetch")
+    assumptions = ("m1-before-mreq", "mreq-high", "mreq-low", "m1-width")
     spoiled = "kind-by-level"
     by_pdr = True
 
@@ -51,7 +51,8 @@ class Kind(Checker):
         began_before = Signal(name="request_began_before")
         self.m.d.sync += began_before.eq(request.began)
         self.assume("m1_before_mreq", ~(request.began & (m1.lasted < 1)))
-        self.assume("m1_after_mreq", ~(began_before & m1.changed))
-        self.assume("width_request", ~request.changed | (request.ended >= _WIDTH))
-        self.assume("width_m1", ~m1.changed | (m1.ended >= _WIDTH))
-        self.assume("one_fetch", ~(request.began & fetched & m1.level & ~m1.began))
+        self.assume("m1_before_mreq_stays", ~(began_before & m1.changed))
+        self.assume("m1_before_mreq_once", ~(request.began & fetched & m1.level & ~m1.began))
+        self.assume("mreq_high", ~request.began | (request.ended >= _WIDTH))
+        self.assume("mreq_low", ~request.over | (request.ended >= _WIDTH))
+        self.assume("m1_width", ~m1.changed | (m1.ended >= _WIDTH))

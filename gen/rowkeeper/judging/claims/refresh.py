@@ -190,7 +190,7 @@ class LegalBound(_Gaps):
         " within the legal gap."
     )
     assertions = 2
-    assumptions = ("drought", "request-length", "grant-between")
+    assumptions = ("drought", "mreq-low", "grant-silent")
     spoiled = "standby-off"
 
     def check(self) -> None:
@@ -208,7 +208,7 @@ class LegalBound(_Gaps):
         request = Seen(self.m, s, "mreq")
         account_seen(self, request)
         granted_before, before = Signal(name="granted_before"), Signal(name="request_before")
-        turn = Turn(self.m, s, request)
+        self.turn = turn = Turn(self.m, s, request)
         self.lemma("turn", turn.proper)
         self.m.d.sync += [granted_before.eq(s.probe("granted")), before.eq(request.second)]
         begins = request.second & ~before
@@ -220,8 +220,8 @@ class LegalBound(_Gaps):
         self.assume("drought", self.dry_now <= b.drought_ticks)
         lasts = Signal(range(b.request_low_ticks + 2), name="request_lasts")
         self.m.d.sync += lasts.eq(Mux(request.second, at_most(lasts + 1, b.request_low_ticks), 0))
-        self.assume("request_length", ~(before & ~request.second) | (lasts >= b.request_low_ticks))
-        self.assume("grant_between", ~(before & request.second) | ~s.probe("granted") | granted_before)
+        self.assume("mreq_low", ~(before & ~request.second) | (lasts >= b.request_low_ticks))
+        self.assume("grant_silent", ~(before & request.second) | ~s.probe("granted") | granted_before)
         # What has been asked for in turn and is not served yet.
         self.waits, waits_before = Signal(name="waits"), Signal(name="waits_before")
         self.m.d.comb += self.waits.eq((asks | waits_before) & ~s.any_of("preparing", "refreshing"))
@@ -234,6 +234,9 @@ class LegalBound(_Gaps):
         s, t, b = self.scene, self.scene.design.ticks, self.bounds
         age, ready, waits = s.probe("age"), s.probe("ready"), self.waits
         rank = remaining(self.m, s)
+        for name, turn, ticks in (("follows", self.turn.follows, 1), ("now", self.turn.now, 2)):
+            rests = (s.probe("rest") >= ticks) & (s.probe("step") >= max(min(ticks, t.column_rest - 2), 0))
+            self.lemma(f"rest_{name}", ~(turn & s.probe("resting")) | rests)
         self.lemma("before", self.before == s.probe("request_before"))
         round_trip = t.refresh_low + max(t.precharge, t.column_rest) + t.row_setup
         self.lemma("warming", ~(self.begun & ~ready) | (self.since + rank <= round_trip))

@@ -59,7 +59,7 @@ class Served(Checker):
         " request is seen, and every refresh request is taken up at that tick."
     )
     assertions = 3
-    assumptions = ("request-width", "strobe-length", "silence", "awake", "legal-bound")
+    assumptions = ("mreq-low", "mreq-high", "strobe-length", "grant-silent", "reset-silent", "awake", "legal-bound")
     spoiled = "served-twice"
 
     def check(self) -> None:
@@ -92,8 +92,8 @@ class Served(Checker):
         with self.m.If(self.request.second):
             self.m.d.sync += self.kind_before.eq(s.probe("refresh"))
         self.high = Mux(self.kind_before, b.refresh_high_ticks, b.request_high_ticks)
-        self.assume("request_width_low", ~asked.over | (asked.ended >= b.request_low_ticks))
-        self.assume("request_width_high", ~asked.began | (asked.ended >= self.high))
+        self.assume("mreq_low", ~asked.over | (asked.ended >= b.request_low_ticks))
+        self.assume("mreq_high", ~asked.began | (asked.ended >= self.high))
         # How long RD or WR has been seen beside the request, up to the tick before.
         self.beside = Signal(range(asked.limit + 1), name="beside")
         strobe = self.request.second & (self.read.second | self.write.second)
@@ -101,8 +101,9 @@ class Served(Checker):
         self.assume("strobe_length", ~asked.over | self.kind_before | (self.beside >= b.strobe_ticks))
         loud = Stopwatch(self.m, s.probe("quiet") | ~s.probe("ready"), b.notice_ticks + 2, "not_loud")
         self.since_quiet = Mux(loud.level, 0, loud.lasted + 1)
-        self.assume("silence", ~self.request.second | ~(s.probe("quiet") | s.probe("granted")))
-        self.assume("silence_notice", ~asked.began | (self.since_quiet >= b.notice_ticks))
+        self.assume("grant_silent", ~(self.request.second & s.probe("granted")))
+        self.assume("reset_silent", ~(self.request.second & s.probe("quiet")))
+        self.assume("reset_silent_notice", ~asked.began | (self.since_quiet >= b.notice_ticks))
         self.assume("awake", ~self.request.second | s.probe("ready"))
         self.assume("legal_bound", ~s.probe("ready") | (s.probe("age") < s.design.ticks.forced))
 
