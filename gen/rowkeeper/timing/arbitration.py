@@ -5,7 +5,7 @@ that is the notice. A line that is not wired gives none. Must not know how ticks
 """
 
 from rowkeeper.contract import ArbitrationSum, Note, Term
-from rowkeeper.reading.figures import Source
+from rowkeeper.reading.figures import Figure
 from rowkeeper.timing.bus import from_figure
 from rowkeeper.timing.device import SYNCHRONISER, Facts, counted
 from rowkeeper.timing.margins import Judged, spare
@@ -83,8 +83,7 @@ def _end_of_grant(facts: Facts) -> ArbitrationSum:
     figures = facts.board.grade.figures
     event = "end of a grant"
     if wired(facts, "busreq_n"):
-        setup = figures.get("TsBUSREQ")
-        return _with_notice(facts, event, "BUSREQ rising", "busreq_n", 1, setup and setup.lo_ps, setup and setup.source)
+        return _with_notice(facts, event, "BUSREQ rising", "busreq_n", 1, figures.get("TsBUSREQ"))
     if not wired(facts, "busack_n"):
         return _without_notice(facts, event, "nothing (neither BUSREQ nor BUSACK is wired)", "busreq_n")
     rises = figures.get("TdCf(BUSACKr)")
@@ -102,23 +101,17 @@ def _end_of_reset(facts: Facts) -> ArbitrationSum:
         return _without_notice(facts, event, "nothing (RESET is not wired)", "reset_n")
     clocks = facts.board.bus.traffic.reset_restart_clocks
     setup = facts.board.grade.figures.get("TsRESET") if facts.board.at_worst.reset_aligned else None
-    return _with_notice(facts, event, "RESET rising", "reset_n", clocks, setup and setup.lo_ps, setup and setup.source)
+    return _with_notice(facts, event, "RESET rising", "reset_n", clocks, setup)
 
 
-def _with_notice(
-    facts: Facts, event: str, notice: str, net: str, clocks: int, setup_ps: int | None, source: Source | None
-) -> ArbitrationSum:
+def _with_notice(facts: Facts, event: str, notice: str, net: str, clocks: int, asked: Figure | None) -> ArbitrationSum:
     """Without the bus's own set-up where that is enough; else with it, and said so."""
-    plain = _sum(event, notice, _clocks(facts, clocks) + _request(facts), _needed(facts, net))
-    if plain.margin_ps >= 0 or not setup_ps or source is None:
+    available, needed = [*_clocks(facts, clocks), *_request(facts)], _needed(facts, net)
+    plain = _sum(event, notice, available, needed)
+    if plain.margin_ps >= 0 or asked is None or not asked.lo_ps:
         return plain
-    setup = Term(_SETUP, setup_ps, None, setup_ps, source)
-    return _sum(
-        event,
-        f"{notice}, at its set-up time or earlier",
-        [setup, *_clocks(facts, clocks), *_request(facts)],
-        _needed(facts, net),
-    )
+    setup = Term(_SETUP, asked.lo_ps, None, asked.lo_ps, asked.source)
+    return _sum(event, f"{notice}, at its set-up time or earlier", [setup, *available], needed)
 
 
 def _without_notice(facts: Facts, event: str, notice: str, net: str) -> ArbitrationSum:
@@ -155,5 +148,3 @@ def arbitration_notes(facts: Facts, sums: tuple[ArbitrationSum, ...], forced_unu
         "a legal bus never lets the timer come to its forced refresh"
     )
     return [Note("no wait output", text)]
-
-

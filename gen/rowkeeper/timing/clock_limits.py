@@ -1,7 +1,9 @@
 """The bus clock against the processor's own limits, before anything else is believed.
 
-Takes the board's clock and the bus grade; gives margins and notes. A grade is rated by nominal frequency, so TcC is judged on and the widths on their shares of the nominal period; where the tolerance dips below, a note says so. Duty and
-edges are judged at their worst. A limit that is met is a reference: what is left of it is no margin of the plan.
+Takes the board's clock and the bus grade; gives margins and notes. A grade is rated by nominal frequency, so TcC is
+judged on it, and the widths on their shares of the nominal period; where the tolerance dips below, a note says so.
+Duty and edges are judged at their worst. A limit that is met is a reference: what is left of it is no margin of the
+plan. Must not know cycles or ticks.
 """
 
 from dataclasses import replace

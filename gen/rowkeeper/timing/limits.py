@@ -40,6 +40,8 @@ class _Line:
     sense: Literal["min", "max"] = "min"
 
 
+_OURS = Source(Mark.DERIVED, "rules of the sequencer")
+
 # Limits of the chip's sheet inside one cycle.
 _WITHIN = (
     _Line("tRAS", "RASf", "RASr", "row strobe low"),
@@ -112,12 +114,12 @@ def _of_sheet(chip: Chip, lines: tuple[_Line, ...]) -> list[Rule]:
     return rules
 
 
-def chip_within(scene: Scene, facts: Facts) -> list[Rule]:
+def chip_within(scene: Scene, _facts: Facts) -> list[Rule]:
     """Every limit of the chip's sheet inside one cycle."""
     return _of_sheet(scene.chip, _WITHIN)
 
 
-def chip_between(scene: Scene, facts: Facts) -> list[Rule]:
+def chip_between(scene: Scene, _facts: Facts) -> list[Rule]:
     """Every limit of the chip's sheet between two cycles. tRCH and tRRH speak of reads, tRCS of a write before one."""
     write = scene.cycle == "memory write"
     lines = tuple(line for line in _BETWEEN if not (write and line.symbol in ("tRCH", "tRRH")))
@@ -140,7 +142,7 @@ def row_cycle(scene: Scene, facts: Facts) -> list[Rule]:
     return [Rule("tRC", *events, "min", _promised(figure), note="one random cycle")]
 
 
-def column_delay(scene: Scene, facts: Facts) -> list[Rule]:
+def column_delay(scene: Scene, _facts: Facts) -> list[Rule]:
     """tRCD maximum: a reference point. Beyond it tCAC decides the access, and that is judged on its own."""
     figure = scene.chip.limits.get("tRCD")
     if figure is None or figure.hi_ps is None or scene.cycle == "any access":
@@ -160,7 +162,7 @@ def data_in_time(scene: Scene, facts: Facts) -> list[Rule]:
     return [*rules, Rule(figure.symbol, "buffer drives", "sample", "min", asked, note="data buffer driving in time")]
 
 
-def data_held(scene: Scene, facts: Facts) -> list[Rule]:
+def data_held(_scene: Scene, facts: Facts) -> list[Rule]:
     """tOFF and ThD: chip and buffer keep data on the bus from the edge at which it is taken.
 
     Counted from RD rising as well, for readers that take ThD so; the bus has taken its data by then: a reference.
@@ -175,14 +177,10 @@ def data_held(scene: Scene, facts: Facts) -> list[Rule]:
     return [*rules, Rule("ThD(RDr)", "RDr", "buffer floats", "min", asked, "reference", "data until RD has risen")]
 
 
-def turnaround(scene: Scene, facts: Facts) -> list[Rule]:
+def turnaround(_scene: Scene, facts: Facts) -> list[Rule]:
     """Our data buffer is off before the next driver, which may start as soon as its own strobe falls."""
     nothing = Promise("no overlap", 0, None, facts.clock_source)
     return [Rule("turnaround", "buffer floats", "next driver", "min", nothing, note="data buffer off the bus")]
-
-
-def _ours(facts: Facts) -> Source:
-    return Source(Mark.DERIVED, "sequencer rules")
 
 
 def cycle_kind(scene: Scene, facts: Facts) -> list[Rule]:
@@ -197,9 +195,9 @@ def cycle_kind(scene: Scene, facts: Facts) -> list[Rule]:
     return rules
 
 
-def address_captured(scene: Scene, facts: Facts) -> list[Rule]:
+def address_captured(_scene: Scene, facts: Facts) -> list[Rule]:
     """The bus address stands at the last edge that loads it, which is the edge that first sees MREQ, and past it."""
-    asked = Promise("set-up is in the path", 0, None, _ours(facts))
+    asked = Promise("set-up is in the path", 0, None, _OURS)
     kept = Promise("aperture of the address flip-flop", facts.aperture_ps, None, facts.aperture.source)
     return [
         Rule("address-captured", "A arrives", "MREQf seen", "min", asked, note="address stands before it is taken"),
@@ -207,19 +205,19 @@ def address_captured(scene: Scene, facts: Facts) -> list[Rule]:
     ]
 
 
-def seen_in_time(scene: Scene, facts: Facts) -> list[Rule]:
+def seen_in_time(scene: Scene, _facts: Facts) -> list[Rule]:
     """RD or WR is known while the request is still there, and before the access is given up."""
     line = "WR" if scene.cycle == "memory write" else "RD"
-    asked = Promise("no later", 0, None, _ours(facts))
+    asked = Promise("no later", 0, None, _OURS)
     return [
         Rule(f"{line} seen", "go", "last start", "min", asked, note="before the request is over"),
         Rule("give up", "strobe known", "given up", "min", asked, note=f"{line} known before the access is given up"),
     ]
 
 
-def column_capped(scene: Scene, facts: Facts) -> list[Rule]:
+def column_capped(_scene: Scene, _facts: Facts) -> list[Rule]:
     """The bus ends the column strobe; the cap that keeps tCAS maximum comes later, so data is never cut off."""
-    asked = Promise("no earlier", 0, None, _ours(facts))
+    asked = Promise("no earlier", 0, None, _OURS)
     return [Rule("column cap", "request over", "capped", "min", asked, note="the bus ends the cycle before the cap")]
 
 

@@ -13,7 +13,7 @@ from dataclasses import dataclass, field
 from rowkeeper.contract import Term
 from rowkeeper.reading.figures import Mark, Source, Window
 
-__all__ = ["SAME", "UNPUBLISHED", "Bound", "Contradiction", "Network", "Promise", "minus"]
+__all__ = ["SAME", "UNPUBLISHED", "Bound", "ContradictionError", "Network", "Promise", "minus"]
 
 UNPUBLISHED = Source(Mark.UNPUBLISHED)
 
@@ -57,7 +57,7 @@ class Bound:
     per_tick: Mapping[str, int]
 
 
-class Contradiction(Exception):
+class ContradictionError(Exception):
     """Promises that cannot all be kept: `bound` adds up to less than no time around a loop."""
 
     def __init__(self, bound: Bound) -> None:
@@ -105,7 +105,10 @@ class Network:
     def window(self, earlier: str, later: str) -> Window:
         """The tightest window of `later - earlier`."""
         earliest, latest = self.earliest(earlier, later), self.latest(earlier, later)
-        return Window(earliest and earliest.total_ps, latest and latest.total_ps)
+        return Window(
+            None if earliest is None else earliest.total_ps,
+            None if latest is None else latest.total_ps,
+        )
 
     def latest(self, earlier: str, later: str) -> Bound | None:
         """The most that `later - earlier` can be, or None where nothing bounds it."""
@@ -126,7 +129,7 @@ class Network:
         return _bound_of(path[::-1] if sign > 0 else path, sign)
 
     def check(self) -> None:
-        """Raise `Contradiction` if the promises contradict each other."""
+        """Raise `ContradictionError` if the promises contradict each other."""
         distance = dict.fromkeys(self.arcs, 0)
         self._relax(distance, deque(self.arcs))
 
@@ -153,7 +156,7 @@ class Network:
                     if arc.end not in queued:
                         met[arc.end] += 1
                         if met[arc.end] > len(self.arcs):
-                            raise Contradiction(_loop(came_by, arc.end))
+                            raise ContradictionError(_loop(came_by, arc.end))
                         queued.add(arc.end)
                         waiting.append(arc.end)
         return came_by
@@ -187,4 +190,3 @@ def _bound_of(path: list[_Arc], sign: int) -> Bound:
             for name, times in p.counts:
                 per_tick[name] = per_tick.get(name, 0) + way * times * tick
     return Bound(sum(term.used_ps for term in terms), tuple(terms), per_tick)
-

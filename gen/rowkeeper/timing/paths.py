@@ -25,6 +25,7 @@ __all__ = [
     "travel",
 ]
 
+
 @dataclass(frozen=True, slots=True)
 class Path:
     """`fast` holds the lower ends, `slow` the upper ends; for one net they are the same promises."""

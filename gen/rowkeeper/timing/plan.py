@@ -65,7 +65,7 @@ def _refused(board: Board, ticks: TickTable) -> list[Note]:
     if ticks.style == "straight":
         reasons = ["only counted strobes are generated"]
         if board.at_worst.reset_max_ps != 0 and not board.at_worst.reset_aligned:
-            reasons.append("a reset that keeps no step with the clock would cut a strobe short that is passed straight on")
+            reasons.append("an unaligned reset would cut short a strobe that is passed straight on")
         if board.standby == "own-timer":
             reasons.append("an access could begin in the middle of a refresh of our own")
         texts.append(f"strobe style straight: {'; '.join(reasons)}. Leave the style to `auto` or give `counted`")
@@ -99,7 +99,9 @@ def _legal_margins(facts: Facts, drought: Drought, legal_gap: int) -> list[Margi
     note = "the longest gap on a legal bus ends before a refresh is forced"
     source = facts.board.bus.traffic.source
     return [
-        Margin("tREF", "refresh", "", "max", "hard", required, None, latest, required - latest, terms, source, False, note)
+        Margin(
+            "tREF", "refresh", "", "max", "hard", required, None, latest, required - latest, terms, source, False, note
+        )
     ]
 
 
@@ -115,8 +117,8 @@ def _drought_notes(facts: Facts, drought: Drought) -> list[Note]:
     if worst.reset_max_ps == 0 or drought.short_resets or facts.board.standby != "own-timer":
         return []
     text = (
-        f"a reset shorter than {facts.ticks.reset_settle} ticks that strikes at the end of the bus's longest gap can bring "
-        "a forced refresh into the first access after it; no row is ever late, but that access may be"
+        f"a reset shorter than {facts.ticks.reset_settle} ticks that strikes at the end of the bus's longest gap can "
+        "bring a forced refresh into the first access after it; no row is ever late, but that access may be"
     )
     return [Note("short reset", text)]
 

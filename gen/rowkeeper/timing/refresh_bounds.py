@@ -157,7 +157,9 @@ def spare_by_service(facts: Facts) -> list[Judged]:
     spare_ticks = timer.ticks.standby - _least_standby(t) - timer.missing_below_one
     busy = (t.row_end + t.write_lead + t.row_hold + 2, t.row_setup + t.refresh_low + 1)
     found: list[Judged] = []
-    for situation, one, growth in zip(("after access", "after refresh"), busy, (_AFTER_ACCESS, _AFTER_REFRESH), strict=True):
+    for situation, one, growth in zip(
+        ("after access", "after refresh"), busy, (_AFTER_ACCESS, _AFTER_REFRESH), strict=True
+    ):
         per_tick = {n: -tick * (growth.get(n, 0) + _STANDBY.get(n, 0)) for n in {**growth, **_STANDBY}}
         margin = (spare_ticks + max(busy) - one) * tick
         found.append(spare("standby", situation, margin, per_tick, facts.tick_source))
@@ -193,7 +195,7 @@ def timer_ticks(facts: Facts) -> TimerTicks:
 
 
 def refresh_bounds(facts: Facts, drought: Drought) -> RefreshBounds:
-    """Gaps in ticks and ages in picoseconds for the ticks as they are. Without a timer, grants and resets count whole."""
+    """Gaps in ticks and ages in picoseconds for these ticks. Without a timer, grants and resets count whole."""
     t, rows = facts.ticks, _rows(facts)
     running = rows * facts.board.bus.traffic.sweep_clocks * facts.clock.period_hi_ps
     if facts.board.standby == "own-timer":
@@ -221,4 +223,3 @@ def _without_timer(facts: Facts, drought: Drought) -> tuple[int, tuple[Term, ...
             terms.append(Term(name if span is not None else f"{name}: unlimited", 0, span, ps, facts.clock_source))
             total += ps
     return total, tuple(terms)
-

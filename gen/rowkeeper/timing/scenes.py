@@ -17,6 +17,10 @@ from rowkeeper.timing.paths import part_of, travel
 __all__ = ["Scene", "chips_of", "scenes"]
 
 _SPARE_CLOCKS = 3
+_SEEN = (
+    *(("MREQf", "mreq_n"), ("MREQr", "mreq_n"), ("RDf", "rd_n"), ("RDr", "rd_n"), ("WRf", "wr_n")),
+    *(("M1f", "m1_n"), ("M1r", "m1_n"), ("next MREQf", "mreq_n"), ("next M1f", "m1_n")),
+)
 
 
 @dataclass(frozen=True, slots=True)
@@ -84,7 +88,7 @@ def _pair(facts: Facts, chip: Chip, kind: CycleKind, follower: CycleKind, waits:
     bus.begin(follower, second, "next ")
     bus.between()
     _requests(network, facts)
-    _next_cycle(network, facts, follower, second)
+    _next_cycle(network, facts, follower)
     within = follower == FOLLOWERS[kind][0]
     note = f"{waits} waits" if waits else ""
     scene = Scene(network, chip, kind, follower, note, within)
@@ -100,9 +104,7 @@ def _pair(facts: Facts, chip: Chip, kind: CycleKind, follower: CycleKind, waits:
 
 def _requests(network: Network, facts: Facts) -> None:
     """When the device sees the lines of both cycles."""
-    lines = (("MREQf", "mreq_n"), ("MREQr", "mreq_n"), ("RDf", "rd_n"), ("RDr", "rd_n"), ("WRf", "wr_n"))
-    lines += (("M1f", "m1_n"), ("M1r", "m1_n"), ("next MREQf", "mreq_n"), ("next M1f", "m1_n"))
-    for event, net in lines:
+    for event, net in _SEEN:
         if network.holds(event):
             sample(network, facts, net, event, f"{event} seen")
     for event in ("A", "A ends", "next A"):
@@ -258,7 +260,7 @@ def _data(network: Network, facts: Facts, chip: Chip, write: bool) -> None:
 # --- what follows ------------------------------------------------------------------------------------------------
 
 
-def _next_cycle(network: Network, facts: Facts, follower: CycleKind, second: int) -> None:
+def _next_cycle(network: Network, facts: Facts, follower: CycleKind) -> None:
     """The neighbour: its strobes start on time or later."""
     if follower == "interrupt acknowledge":
         return

@@ -107,7 +107,7 @@ def first_guess(facts: Facts, given: GivenTicks) -> TickTable:
     spread = max(p.hi_ps for p in outputs) - min(p.lo_ps for p in outputs)
 
     def ticks_for(*symbols: str) -> int:
-        return max(1, max(_up(_asked(chips_of(facts), s) + spread, tick) for s in symbols))
+        return max(1, *(_up(_asked(chips_of(facts), s) + spread, tick) for s in symbols))
 
     mux = given.mux or ticks_for("tRAH")
     column = given.column or max(mux + ticks_for("tASC"), ticks_for("tRCD"))
