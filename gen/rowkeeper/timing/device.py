@@ -6,17 +6,18 @@ order of states is that of `logic/sequencer.py`, told here in spans only. Must n
 """
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from math import ceil, floor
 
 from rowkeeper.contract import Delays, TickTable
 from rowkeeper.reading.board import Board
 from rowkeeper.reading.figures import Figure, Mark, Source
+from rowkeeper.timing.bus import from_figure
 from rowkeeper.timing.bus_clock import BusClock, bus_clock, period_window
 from rowkeeper.timing.network import Network, Promise, minus
-from rowkeeper.timing.paths import Path, group_path, skew_between, travel
+from rowkeeper.timing.paths import Path, group_path, is_pad, skew_between, travel
 
-__all__ = ["Facts", "counted", "drive", "facts_of", "sample", "skewed", "with_ticks"]
+__all__ = ["Facts", "counted", "drive", "facts_of", "sample", "skewed", "through", "with_ticks"]
 
 _NETS = (
     *("mreq_n", "m1_n", "rd_n", "wr_n", "busreq_n", "busack_n", "reset_n", "a"),
@@ -70,19 +71,7 @@ def facts_of(board: Board, delays: Delays, ticks: TickTable) -> Facts:
 
 def with_ticks(facts: Facts, ticks: TickTable) -> Facts:
     """The same board with other ticks: nothing else is worked out again."""
-    return Facts(
-        facts.board,
-        facts.delays,
-        ticks,
-        facts.clock,
-        facts.clock_source,
-        facts.tick_lo_ps,
-        facts.tick_hi_ps,
-        facts.tick_source,
-        facts.aperture,
-        facts.paths,
-        facts.skews,
-    )
+    return replace(facts, ticks=ticks)
 
 
 def counted(facts: Facts, *names: str, plus: int = 0, at_least: bool = False, at_most: bool = False) -> Promise:
@@ -109,15 +98,38 @@ def sample(network: Network, facts: Facts, net: str, event: str, seen: str) -> N
     """
     arrives = f"{event} arrives"
     travel(network, event, arrives, facts.paths[net])
-    wide = facts.aperture_ps
-    edge = Promise("to the next device clock edge", 0, facts.tick_hi_ps, facts.tick_source)
-    aperture = Promise("aperture of the first flip-flop", -wide, wide, facts.aperture.source)
-    network.promise(arrives, seen, edge, aperture)
+    network.promise(arrives, seen, *_first_edge(facts))
 
 
 def drive(network: Network, facts: Facts, net: str, edge: str, event: str) -> None:
     """A register that moves at `edge` is seen at the chip as `event`."""
     travel(network, edge, event, facts.paths[net])
+
+
+def through(network: Network, facts: Facts, line: tuple[str, str], strobe: tuple[str, str], *spans: Promise) -> None:
+    """From a bus line to a strobe that follows it: both pads together, where the sheet bounds them as a pair.
+
+    `line` and `strobe` are a net and its event, `spans` the ticks from the first flip-flop to the register that moves.
+    """
+    pair = facts.board.device.pads_together
+    if pair is None:
+        return
+    inwards, outwards = facts.paths[line[0]].slow, facts.paths[strobe[0]].slow
+    parts = [
+        *(p for p in inwards if not is_pad(p)),
+        *_first_edge(facts),
+        *spans,
+        *(p for p in outwards if not is_pad(p)),
+        from_figure(pair, f"{line[0]} and {strobe[0]}: pads together"),
+    ]
+    network.promise(line[1], strobe[1], *(replace(p, lo_ps=None) for p in parts))
+
+
+def _first_edge(facts: Facts) -> tuple[Promise, Promise]:
+    """From a signal's arrival to the edge that first sees it: one tick at most, give or take the aperture."""
+    wide = facts.aperture_ps
+    edge = Promise("to the next device clock edge", 0, facts.tick_hi_ps, facts.tick_source)
+    return edge, Promise("aperture of the first flip-flop", -wide, wide, facts.aperture.source)
 
 
 def skewed(network: Network, facts: Facts, one: tuple[str, str], other: tuple[str, str], span: Promise) -> None:

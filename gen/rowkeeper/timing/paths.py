@@ -18,6 +18,7 @@ __all__ = [
     "Path",
     "default_delays",
     "group_path",
+    "is_pad",
     "net_path",
     "net_windows",
     "part_of",
@@ -126,6 +127,11 @@ def _belongs(net: str, names: str) -> bool:
 def _pad(net: Net, figure: Figure) -> tuple[Promise, ...]:
     """The pad of a net that touches the device: neither the fabric's figures nor the router's hold it."""
     return (from_figure(figure, f"{net.name}: pad"),) if net.pin else ()
+
+
+def is_pad(promise: Promise) -> bool:
+    """Whether this promise of a path is the device's pad."""
+    return promise.name.endswith(": pad")
 
 
 def _inside(delays: Delays, net: str) -> tuple[Promise, ...]:

@@ -26,7 +26,8 @@ __all__ = [
 ]
 
 _GUARD = 4  # ticks kept free below the chip's interval
-_SLACK = 4  # ticks between a bus request being seen and its refresh strobe, beyond row_setup
+_WEIGHT = 1000
+_SLACK = 4  # ticks by which the longest legal gap ends before a refresh is forced
 
 
 def least_bus_clock_hz(rows: int, interval_ps: int, sweep_clocks: int) -> Fraction:
@@ -127,15 +128,11 @@ def _reset_terms(facts: Facts, reset_settle: int, short_resets: bool) -> list[tu
 
 @dataclass(frozen=True, slots=True)
 class TimerTicks:
-    """The timer's ticks, and by how many ticks `standby` fails to reach its least (0 when it fits).
-
-    `missing_below_one`: a standby below one tick is given as one; this is what was left off.
-    """
+    """The timer's ticks; `spare_ticks`: by how much `standby` is above its least, below 0 where it does not fit."""
 
     ticks: TickTable
     drought: Drought
-    missing: int
-    missing_below_one: int
+    spare_ticks: int
 
 
 def _least_standby(ticks: TickTable) -> int:
@@ -143,27 +140,21 @@ def _least_standby(ticks: TickTable) -> int:
     return ticks.row_setup + ticks.refresh_low + ticks.precharge + SYNCHRONISER + 1
 
 
-# How `TickTable.service` and the least standby grow with each tick: after an access, and after a refresh.
-_AFTER_ACCESS = {"column": 1, "row_hold": 2, "write_lead": 1, "precharge": 1, "row_setup": 1}
-_AFTER_REFRESH = {"row_setup": 2, "refresh_low": 1, "precharge": 1}
-_STANDBY = {"row_setup": 2, "refresh_low": 1, "precharge": 1}
+# How `TickTable.service`, `TickTable.legal_gap` and the least standby together grow with each tick.
+_GROWTH = {"column": 1, "row_hold": 2, "write_lead": 1, "precharge": 3, "row_setup": 3, "refresh_low": 1}
 
 
 def spare_by_service(facts: Facts) -> list[Judged]:
-    """Time by which `standby` is longer than it must be, once forced refresh, service and drought have had theirs."""
+    """Time by which `standby` is longer than it must be, once forced refresh, service and drought have had theirs.
+
+    Any is enough: it counts so heavily that it comes last when there is some, and first when it is missing.
+    """
     if facts.board.standby != "own-timer":
         return []
-    timer, t, tick = timer_ticks(facts), facts.ticks, facts.tick_hi_ps
-    spare_ticks = timer.ticks.standby - _least_standby(t) - timer.missing_below_one
-    busy = (t.row_end + t.write_lead + t.row_hold + 2, t.row_setup + t.refresh_low + 1)
-    found: list[Judged] = []
-    for situation, one, growth in zip(
-        ("after access", "after refresh"), busy, (_AFTER_ACCESS, _AFTER_REFRESH), strict=True
-    ):
-        per_tick = {n: -tick * (growth.get(n, 0) + _STANDBY.get(n, 0)) for n in {**growth, **_STANDBY}}
-        margin = (spare_ticks + max(busy) - one) * tick
-        found.append(spare("standby", situation, margin, per_tick, facts.tick_source))
-    return found
+    tick = facts.tick_hi_ps * _WEIGHT
+    margin = timer_ticks(facts).spare_ticks * tick
+    per_tick = {name: -tick * growth for name, growth in _GROWTH.items()}
+    return [spare("standby", "refresh timer", margin, per_tick, facts.tick_source)]
 
 
 def timer_ticks(facts: Facts) -> TimerTicks:
@@ -179,10 +170,9 @@ def timer_ticks(facts: Facts) -> TimerTicks:
     least = _least_standby(t)
     for short_resets in (True, False):
         drought = drought_of(facts, reset_settle, short_resets)
-        standby = forced - drought.ticks - t.row_setup - 2 * _SLACK
+        standby = forced - _SLACK - replace(t, standby=0).legal_gap(drought.ticks)
         if standby >= least:
             break
-    missing = max(0, least - standby)
     table = replace(
         t,
         forced=max(forced, 1),
@@ -191,7 +181,7 @@ def timer_ticks(facts: Facts) -> TimerTicks:
         pause=max(pause, 1),
         warm_up_cycles=cycles,
     )
-    return TimerTicks(table, drought, missing, max(0, 1 - standby))
+    return TimerTicks(table, drought, standby - least)
 
 
 def refresh_bounds(facts: Facts, drought: Drought) -> RefreshBounds:
@@ -199,7 +189,7 @@ def refresh_bounds(facts: Facts, drought: Drought) -> RefreshBounds:
     t, rows = facts.ticks, _rows(facts)
     running = rows * facts.board.bus.traffic.sweep_clocks * facts.clock.period_hi_ps
     if facts.board.standby == "own-timer":
-        legal = t.standby + drought.ticks + t.row_setup + _SLACK
+        legal = t.legal_gap(drought.ticks)
         most = t.forced + t.service
         return RefreshBounds(
             drought.ticks, legal, most, rows, _interval_ps(facts), running,

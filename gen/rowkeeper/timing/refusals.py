@@ -73,15 +73,11 @@ def _limit(margin: Margin) -> str:
 
 def _arbitration(one: ArbitrationSum) -> str:
     line = "BUSREQ" if "grant" in one.event else "RESET"
-    wire = (
-        f"wire {line} to the device, which rises earlier"
-        if "not wired" in one.notice or "nothing" in one.notice
-        else ""
-    )
-    mends = [part for part in (wire, _FINER, _FASTER_CHIP, _SLOWER_BUS) if part]
+    unwired = "wired" in one.notice
+    mends = [f"wire {line} to the device, which rises earlier"] if unwired else [_FINER, _FASTER_CHIP, _SLOWER_BUS]
     return (
-        f"{one.event}: after {one.notice}, a refresh of our own may still run {_time(-one.margin_ps)} into the next access. "
-        f"Would mend it: {', or '.join(mends)}."
+        f"{one.event}: after {one.notice}, a refresh of our own may still run {_time(-one.margin_ps)} into the next "
+        f"access. Would mend it: {', or '.join(mends)}."
     )
 
 

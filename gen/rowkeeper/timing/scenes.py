@@ -10,7 +10,7 @@ from dataclasses import dataclass
 
 from rowkeeper.reading.board import Chip
 from rowkeeper.timing.bus import CYCLES, FOLLOWERS, BusCycles, CycleKind, from_figure, request_clock
-from rowkeeper.timing.device import SYNCHRONISER, Facts, counted, drive, sample, skewed
+from rowkeeper.timing.device import SYNCHRONISER, Facts, counted, drive, sample, skewed, through
 from rowkeeper.timing.network import SAME, Bound, Network, Promise
 from rowkeeper.timing.paths import part_of, travel
 
@@ -152,6 +152,7 @@ def _access(scene: Scene, facts: Facts, kind: CycleKind) -> Iterator[Scene]:
             _end(last.network, facts, write)
             _follow(last.network, facts, "column rises")
             _data(last.network, facts, scene.chip, write)
+            _pads(last, facts, write)
             yield last
 
 
@@ -230,6 +231,26 @@ def _end(network: Network, facts: Facts, write: bool) -> None:
         skewed(network, facts, ("cas_n", "CASr"), ("we_n", "WEr"), SAME)
     network.promise("column rises", "address released", counted(facts, plus=1, at_least=True))
     drive(network, facts, "ma", "address released", "column address ends")
+
+
+def _pads(scene: Scene, facts: Facts, write: bool) -> None:
+    """Strobes that follow a line of the bus, from pin to pin, where the sheet bounds both pads as a pair."""
+    network, see = scene.network, counted(facts, plus=SYNCHRONISER)
+    lead = (counted(facts, "write_lead"),) if write else ()
+    by_tick = "by tick" in scene.case
+    if not _straight(facts):
+        through(network, facts, ("mreq_n", "MREQf"), ("ras_n", "RASf"), see)
+    line = ("mreq_n", "MREQf") if by_tick else (("wr_n", "WRf") if write else ("rd_n", "RDf"))
+    spans = (see, counted(facts, "column")) if by_tick else (see,)
+    through(network, facts, line, ("cas_n", "CASf"), *spans, *lead)
+    if write:
+        through(network, facts, line, ("we_n", "WEf"), *spans)
+    else:
+        through(network, facts, line, ("read_n", "READf"), *spans)
+    if "ended by MREQ" in scene.case:
+        for net, event in (("cas_n", "CASr"), ("read_n", "READr"), ("we_n", "WEr")):
+            if network.holds(event):
+                through(network, facts, ("mreq_n", "MREQr"), (net, event), see)
 
 
 def _data(network: Network, facts: Facts, chip: Chip, write: bool) -> None:
