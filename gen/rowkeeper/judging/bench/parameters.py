@@ -1,4 +1,4 @@
-"""The numbers of one bench: what board and design say, as whole picoseconds and counts under the names both engines use.
+"""The numbers of one bench: board and design as whole picoseconds and counts, under the names both engines use.
 
 Takes a board, a design and the window of every net; gives an ordered table of names and integers. Must not know C++,
 Verilog or how a window was found.
@@ -231,7 +231,7 @@ def _lengths(board: Board, design: Design) -> list[tuple[str, int]]:
     ready = max((t.pause + t.warm_up_cycles * cycle) * tick, chip.pause_ps) + 5_000_000
     clock = Fraction(_PS) / board.bus_clock.frequency_hz
     idle = chip.refresh_ps * 3 // 2
-    has_grant = design.has_busreq and design.has_busack and worst.grant_max_ps != 0
+    has_grant = worst.grant_max_ps != 0
     grant = int((idle if worst.grant_max_ps is None else worst.grant_max_ps) / clock) if has_grant else 0
     long_reset = _LONG_RESET_PS if worst.reset_max_ps is None else min(_LONG_RESET_PS, worst.reset_max_ps)
     return [

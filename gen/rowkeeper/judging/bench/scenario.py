@@ -24,13 +24,15 @@ def scenarios(board: Board) -> tuple[Scenario, ...]:
     """Every scenario that this board's bus can meet, in the order they are run."""
     worst = board.at_worst
     found = [
-        Scenario("warm-up", "The processor runs from power-up; strobes keep silent through the pause, then all is served."),
+        Scenario(
+            "warm-up", "The processor runs from power-up; no strobe before the pause is over, then all is served."
+        ),
         Scenario("march-c", "March C- over the memory, opcode fetches and refreshes between the accesses."),
         Scenario("idle", "No access for longer than the refresh interval, halted and in reset; nothing is lost."),
     ]
     if worst.reset_max_ps != 0:
-        found.append(Scenario("reset", "Reset strikes at every phase of a cycle, once for long; no other cell changes."))
+        found.append(Scenario("reset", "Reset strikes at every phase of a cycle, and once for long; nothing is lost."))
     if worst.grant_max_ps != 0:
-        found.append(Scenario("grants", "Grants after every machine cycle, the longest and the shortest; nothing is lost."))
-    found.append(Scenario("mix", "Random instructions with interrupts, input and output, resets and grants among them."))
+        found.append(Scenario("grants", "Grants after every machine cycle, longest and shortest; nothing is lost."))
+    found.append(Scenario("mix", "Random instructions, interrupts, input and output, resets and grants among them."))
     return tuple(found)

@@ -38,13 +38,36 @@ struct Random {
   }
 };
 
+// The last things that moved: kept until a little after the first violation, then printed.
+struct Waves {
+  struct Moved { Time at; const char *signal; unsigned value; };
+  Moved ring[512];
+  unsigned count, stop;
+  Waves() : count(0), stop(0) {}
+  void moved(Time at, const char *signal, unsigned value) {
+    if (stop && count >= stop) return;
+    Moved m = {at, signal, value};
+    ring[count++ & 511] = m;
+  }
+  void freeze() { if (!stop) stop = count + 128; }
+  void print() const {
+    if (!stop) return;
+    for (unsigned i = count > 512 ? count - 512 : 0; i < count; i++) {
+      const Moved &m = ring[i & 511];
+      printf("wave %lld %s %u\n", (long long)m.at, m.signal, m.value);
+    }
+  }
+};
+
 // How often each check was made, the least slack it had, and what failed.
 struct Checks {
   long count[CHECKS], failed[CHECKS], violations, derated, reference, early, reads;
   Time slack[CHECKS];
   Time now, excuse_from, excuse_until;
-  Checks() {
-    memset(this, 0, sizeof *this);
+  Waves waves;
+  Checks() : violations(0), derated(0), reference(0), early(0), reads(0), now(0) {
+    memset(count, 0, sizeof count);
+    memset(failed, 0, sizeof failed);
     for (int i = 0; i < CHECKS; i++) slack[i] = FAR;
     excuse_from = excuse_until = -FAR;
   }
@@ -53,6 +76,7 @@ struct Checks {
     if (spare < slack[id]) slack[id] = spare;
     if (spare >= 0) return true;
     failed[id]++;
+    waves.freeze();
     if (violations++ < 20)
       printf("violation %lld %s %lld %lld\n", (long long)now, CHECK_NAMES[id], (long long)measured, (long long)limit);
     return false;

@@ -171,6 +171,7 @@ struct Board {
   // Two drivers at once on the data lines.
   void buffer_moves(Time t, bool on) {
     buffer_on = on;
+    checks.waves.moved(t, "buffer_n", !on);
     if (on) {
       buffer_since = t;
       buffer_until = FAR;

@@ -4,6 +4,8 @@
 #include "board.h"
 
 enum { RFSH = INPUTS, IORQ, LINES };  // lines that do not reach the logic
+static const char *const LINE_NAMES[] = {"mreq_n", "m1_n", "rd_n", "wr_n", "busreq_n", "busack_n", "reset_n",
+                                         "rfsh_n", "iorq_n"};
 enum { FETCH, REFRESH, ACCESS };      // what the next MREQ is
 
 #define DRAW(symbol) chance.within(corner, symbol##_LO, symbol##_HI)
@@ -90,6 +92,7 @@ struct Bus {
     level[net] = value;
     if (value) rose[net] = t; else fell[net] = t;
     if (net < INPUTS) board.drive(net, t, value);
+    checks.waves.moved(t, LINE_NAMES[net < ADDRESS ? net : net - INPUTS + ADDRESS], value);
     checks.now = t;
     watch(net, t, value);
   }
@@ -103,6 +106,7 @@ struct Bus {
       if (moved >> i & 1) board.drive(ADDRESS + i, t, to >> i & 1);
     address = to;
     address_at = t;
+    checks.waves.moved(t, "address", to);
   }
   void to_address(Time t, unsigned to) {
     t = later(t, address_free);

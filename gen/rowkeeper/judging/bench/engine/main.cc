@@ -10,6 +10,7 @@ static int result(const Checks &checks, const Board &board, const Bus &bus) {
          checks.total(), checks.violations, checks.derated, checks.reference, checks.early);
   printf("strobes %ld\nresets %ld\ngrants %ld\nclocks %llu\nbus_ps %lld\n", bus.memory.strobes, bus.resets, bus.grants,
          (unsigned long long)board.clocks, (long long)bus.now);
+  checks.waves.print();
   bool passed = checks.violations == 0 && checks.reads > 0;
   printf("%s\n", passed ? "PASS" : checks.reads ? "FAIL" : "FAIL no checks");
   return passed ? 0 : 1;

@@ -48,7 +48,8 @@ struct Memory {
     if (to.cas != pin.cas) { pin.cas = to.cas; note(t, "cas_n", to.cas); if (to.cas) cas_rises(t); else cas_falls(t); }
   }
 
-  void note(Time t, const char *signal, unsigned value) const {
+  void note(Time t, const char *signal, unsigned value) {
+    checks.waves.moved(t, signal, value);
     if (log) printf("event %lld %s %u\n", (long long)t, signal, value);
   }
 
