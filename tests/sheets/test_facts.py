@@ -2,7 +2,7 @@
 
 from dataclasses import replace
 
-from rowkeeper.contract import Finding, Status, Verdict
+from rowkeeper.contract import Finding, Note, Status, Verdict
 from rowkeeper.reading.board import Board, Net, PathElement
 from rowkeeper.sheets.facts import NOT_PROVEN, PathRow, SheetFacts, board_stamp, sheet_facts
 from rowkeeper.sheets.stamp import Stamp
@@ -34,8 +34,8 @@ def test_package_is_said_once() -> None:
     assert (_facts().device, _facts(titled).device) == ("iCE40 HX1K in VQ100", "iCE40 HX1K in VQ100")
 
 
-def test_notes_of_chips_and_device_are_joined() -> None:
-    """One entry per part that has something to say."""
+def test_notes_of_a_chip_are_joined() -> None:
+    """One entry per chip that has something to say."""
     assert _facts().chips == ("4116-15: VBB must never be above VSS while VDD is up. Pin 8 is +12 V.",)
 
 
@@ -93,6 +93,15 @@ def test_notes_of_the_run_are_kept_apart_from_what_is_never_proven() -> None:
     facts = _facts()
     assert facts.not_proven == NOT_PROVEN
     assert facts.notes[-1] == "AHCT541: no minimum delay is published: the earliest is taken as 0"
+
+
+def test_notes_are_cut_to_what_a_sheet_has_room_for() -> None:
+    """One entry per topic, ended at a word, with the number of the others."""
+    notes = [Note("derating", "tRC " * 100), Note("derating", "x"), Note("other", "short")]
+    first, second = sheet_facts(BOARD, "0.1.0", pin_rows(), PASSED, notes).notes
+    assert first.endswith("tRC tRC ... (1 more of this kind)")
+    assert len(first) < 250
+    assert second == "other: short"
 
 
 def test_what_did_not_run_is_on_the_sheet() -> None:

@@ -79,8 +79,8 @@ def _symbol(margins: Sequence[Margin]) -> Finding:
     status = Status.PASSED if worst.margin_ps >= 0 else Status.FAILED
     mark = "; rests on a figure from memory" if any(margin.from_memory for margin in margins) else ""
     place = f"{worst.cycle}, {worst.neighbour}" if worst.neighbour else worst.cycle
-    times = f"{len(margins)} situations" if len(margins) > 1 else "1 situation"
-    detail = f"worst of {times}: {place}{mark}"
+    count = f"worst of {len(margins)} situations: " if len(margins) > 1 else ""
+    detail = f"{count}{place}{mark}"
     return Finding("margin", f"{worst.symbol} {worst.sense}", status, detail, worst.margin_ps)
 
 

@@ -31,6 +31,7 @@ NOT_PROVEN = (
 
 
 _OPEN_SHOWN = 8
+_NOTE_LETTERS = 210
 _NEGATIVE = re.compile(r"(?:^|\s)[-\N{MINUS SIGN}]\s?\d")
 
 
@@ -104,12 +105,27 @@ def sheet_facts(
         assumed=_lines(board.bus.assumptions.values()),
         not_proven=NOT_PROVEN,
         open_items=_open_items(verdict.findings),
-        notes=_lines(f"{note.topic}: {note.text}" for note in notes),
+        notes=_short_notes(notes),
     )
 
 
 def _lines(texts: Iterable[str]) -> tuple[str, ...]:
     return tuple(one_line(text) for text in texts)
+
+
+def _short_notes(notes: Iterable[Note]) -> tuple[str, ...]:
+    """The first note of each topic, cut to what a sheet has room for; the rest is in the margins."""
+    topics: dict[str, list[str]] = {}
+    for note in notes:
+        topics.setdefault(note.topic, []).append(note.text)
+    return tuple(_short(topic, texts) for topic, texts in topics.items())
+
+
+def _short(topic: str, texts: Sequence[str]) -> str:
+    whole = one_line(f"{topic}: {texts[0]}")
+    short = whole if len(whole) <= _NOTE_LETTERS else whole[:_NOTE_LETTERS].rpartition(" ")[0].rstrip(",;") + " ..."
+    more = f" ({len(texts) - 1} more of this kind)" if len(texts) > 1 else ""
+    return f"{short}{more}"
 
 
 def _open_items(findings: Iterable[Finding]) -> tuple[str, ...]:
@@ -146,8 +162,8 @@ def _bank(bank: Bank) -> str:
 
 
 def _chip_notes(board: Board) -> tuple[str, ...]:
-    """What the catalogue has to say of the chips and of the device, each part once."""
-    notes = {bank.chip.name: bank.chip.notes for bank in board.banks} | {board.device.name: board.device.notes}
+    """What the catalogue has to say of the memory chips; of the device the pin table says what a fitter needs."""
+    notes = {bank.chip.name: bank.chip.notes for bank in board.banks}
     return tuple(one_line(f"{name}: {' '.join(said)}") for name, said in notes.items() if said)
 
 
