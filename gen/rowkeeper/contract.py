@@ -93,11 +93,11 @@ class TickTable:
     def legal_gap(self, drought_ticks: int) -> int:
         """Most ticks between falls of the refresh strobe on a bus that is never `drought_ticks` without relief.
 
-        Relief: a refresh request in its turn, or a quiet tick with the sequencer idle. Worst path: relief one tick
-        before `standby` does nothing; the next is a request a whole drought later, seen in its turn when the strobes
-        have rested two ticks. The claim `legal-bound` proves it, for `forced` at least as large.
+        Relief: a refresh request, or a quiet tick with the sequencer idle. Worst path: relief one tick before
+        `standby` does nothing; the next comes a whole drought later. The claim `legal-bound` proves it, for `forced`
+        at least as large.
         """
-        return self.standby + drought_ticks + max(self.rest - 4, 0) + 3 + self.row_setup
+        return self.standby + drought_ticks + 2 + self.row_setup
 
 
 @dataclass(frozen=True, slots=True)

@@ -9,10 +9,11 @@ from rowkeeper.contract import Design
 from rowkeeper.judging.claims.address import AddressStill, Hit
 from rowkeeper.judging.claims.bounds import Bounds
 from rowkeeper.judging.claims.checker import Checker
+from rowkeeper.judging.claims.gaps import AnyBound
 from rowkeeper.judging.claims.harness import harness_text
 from rowkeeper.judging.claims.kind import Kind
-from rowkeeper.judging.claims.refresh import AnyBound, LegalBound, Merged, RowSteps, WarmUp
-from rowkeeper.judging.claims.served import Served
+from rowkeeper.judging.claims.legal import LegalBound, Served
+from rowkeeper.judging.claims.refresh import Merged, RowSteps, WarmUp
 from rowkeeper.judging.claims.short import shortened, shortened_bounds
 from rowkeeper.judging.claims.strobes import DataBuffer, EarlyWrite, NeverCut, NoColumnInRefresh, Order, Precharge
 

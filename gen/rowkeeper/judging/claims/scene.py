@@ -12,12 +12,17 @@ from amaranth.hdl import Module, Mux, Signal, Value
 
 from rowkeeper.contract import Design
 
-__all__ = ["Scene", "Seen", "Stopwatch", "Target", "Turn", "at_most"]
+__all__ = ["Scene", "Seen", "Stopwatch", "Target", "Turn", "at_least", "at_most"]
 
 
 def at_most(value: Value | Signal, limit: int) -> Value:
     """`value`, cut off at `limit`."""
     return Mux(value < limit, value, limit)
+
+
+def at_least(value: Value | Signal, least: int) -> Value:
+    """`value`, raised to `least`."""
+    return Mux(value > least, value, least)
 
 
 @dataclass(frozen=True, slots=True)

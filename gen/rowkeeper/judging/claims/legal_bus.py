@@ -1,21 +1,17 @@
-"""Claim about a legal bus: each request is served exactly once, at its tick.
+"""A legal bus: its promises as assumptions, and how far each request has come, as helpers.
 
-Takes a Scene and Bounds; statements over the pins under the promises of the bus. The helpers are two ranks (ticks at
-most until the sequencer is idle, and until its strobes rest) against the time since the request ended. Must not know
-picoseconds.
+Takes a Scene and Bounds; gives the base of the claims that need a legal bus. The helpers are two ranks (ticks at most
+until the sequencer is idle, and until its strobes rest) against the time since the request ended, and the age of the
+refresh against the drought. All of them are proved together, so no claim leans on another. Must not know picoseconds.
 """
 
 from amaranth.hdl import Const, Module, Mux, Signal, Value
 
-from rowkeeper.judging.claims.checker import Checker
-from rowkeeper.judging.claims.scene import Scene, Seen, Stopwatch, Target, Turn, at_most
+from rowkeeper.judging.claims.gaps import Gaps, remaining
+from rowkeeper.judging.claims.scene import Scene, Seen, Stopwatch, Target, Turn, at_least, at_most
 from rowkeeper.judging.claims.strobe_account import account_seen, limits
 
-__all__ = ["Served"]
-
-
-def _positive(value: Value) -> Value:
-    return Mux(value > 0, value, 0)
+__all__ = ["LegalBus"]
 
 
 def _larger(left: Value, right: Value) -> Value:
@@ -28,10 +24,10 @@ def _ranks(m: Module, scene: Scene) -> tuple[Signal, Signal]:
     step, rest = scene.probe("step"), scene.probe("rest")
     after_column = max(t.precharge - 3, t.column_rest - 2, 0) + 1
     after_row = max(t.precharge - 2, t.column_rest - 2, 0) + 1
-    resting = _positive(_larger(t.precharge - 2 - rest, t.column_rest - 2 - step)) + 1
-    held = _positive(_larger(t.precharge - 3 - rest, Const(t.column_rest - 2))) + 1
+    resting = at_least(_larger(t.precharge - 2 - rest, t.column_rest - 2 - step), 0) + 1
+    held = at_least(_larger(t.precharge - 3 - rest, Const(t.column_rest - 2)), 0) + 1
     to_rest = {
-        "access": _positive(t.row_end - 1 - step) + 1,
+        "access": at_least(t.row_end - 1 - step, 0) + 1,
         "reading": t.row_hold + 1 - step,
         "writing": t.write_lead + t.row_hold + 1 - step,
         "holding": Const(1),
@@ -50,19 +46,21 @@ def _ranks(m: Module, scene: Scene) -> tuple[Signal, Signal]:
     return idle, rests
 
 
-class Served(Checker):
-    """Exactly one row strobe per request, one tick after the request is seen."""
+class LegalBus(Gaps):
+    """A checker on a bus that keeps its promises."""
 
-    name = "served"
-    sentence = (
-        "On a bus that keeps its promises every access in our window gets exactly one row strobe, one tick after its"
-        " request is seen, and every refresh request is taken up at that tick."
+    assumptions = (
+        "mreq-low",
+        "mreq-high",
+        "strobe-length",
+        "grant-silent",
+        "reset-silent",
+        "awake",
+        "drought",
     )
-    assertions = 3
-    assumptions = ("mreq-low", "mreq-high", "strobe-length", "grant-silent", "reset-silent", "awake", "legal-bound")
-    spoiled = "served-twice"
 
-    def check(self) -> None:
+    def behave(self) -> None:
+        """State the assumptions and the helpers."""
         s, b = self.scene, self.bounds
         row_limit, _, _ = limits(self)
         self.row = Stopwatch(self.m, s.row, row_limit, "row")
@@ -71,22 +69,18 @@ class Served(Checker):
         account_seen(self, self.request, self.read, self.write)
         longest = 2 * (b.request_low_ticks + max(b.request_high_ticks, b.refresh_high_ticks) + row_limit)
         self.asked = Stopwatch(self.m, self.request.second, longest, "request")
-        target = Target(self.m, s, self.request, self.row)
-        for name, holds in target.proper.items():
+        self.target = Target(self.m, s, self.request, self.row)
+        for name, holds in self.target.proper.items():
             self.lemma(name, holds)
-        begins = self.asked.began & s.probe("ready")
-        ours, refresh = Signal(name="begins_ours"), Signal(name="begins_refresh")
-        self.m.d.sync += ours.eq(begins & ~s.probe("refresh") & s.in_window(target.asked))
-        self.m.d.sync += refresh.eq(begins & s.probe("refresh"))
-        access = self.row.began & ~s.probe("refreshing")
-        self.must("strobe", ~ours | access)
-        self.must("once", ~access | ours)
-        self.must("refresh", ~refresh | (s.probe("preparing") & (s.probe("step") == 0)))
-        self._assume()
-        self._lemmas()
-        self.cover(self.asked.began & s.probe("ready") & ~s.probe("refresh") & s.in_window(target.asked))
+        self.measure(b.legal_gap_ticks + 1)
+        self.measure_lemmas()
+        self._assume_lines()
+        self._assume_drought()
+        self._between()
+        self._while_asked()
+        self._age()
 
-    def _assume(self) -> None:
+    def _assume_lines(self) -> None:
         s, b, asked = self.scene, self.bounds, self.asked
         self.kind_before = Signal(name="kind_before")  # of the request under way, or of the last one
         with self.m.If(self.request.second):
@@ -105,13 +99,36 @@ class Served(Checker):
         self.assume("reset_silent", ~(self.request.second & s.probe("quiet")))
         self.assume("reset_silent_notice", ~asked.began | (self.since_quiet >= b.notice_ticks))
         self.assume("awake", ~self.request.second | s.probe("ready"))
-        self.assume("legal_bound", ~s.probe("ready") | (s.probe("age") < s.design.ticks.forced))
 
-    def _lemmas(self) -> None:
+    def _assume_drought(self) -> None:
+        """Relief: a refresh request, or a quiet tick with the sequencer idle."""
+        s, most = self.scene, self.bounds.drought_ticks
+        asks = self.asked.began & s.probe("refresh")
+        relief = (s.probe("quiet") & s.probe("idle")) | asks | ~s.probe("ready")
+        self.dry, dry_now = Signal(range(most + 2), name="dry"), Signal(range(most + 2), name="dry_now")
+        self.m.d.comb += dry_now.eq(Mux(relief, 0, self.dry))
+        self.m.d.sync += self.dry.eq(at_most(dry_now + 1, most + 1))
+        self.assume("drought", dry_now <= most)
+
+    def _age(self) -> None:
+        """While nothing is being done about it, age runs ahead of the drought by no more than `standby`."""
+        s, t, most = self.scene, self.scene.design.ticks, self.bounds.drought_ticks
+        age, ready = s.probe("age"), s.probe("ready")
+        free = ready & ~s.any_of("preparing", "refreshing")
+        last = t.standby + most + 2
+        round_trip = t.refresh_low + t.rest + t.row_setup
+        self.lemma("warming", ~(self.begun & ~ready) | (self.since + remaining(self.m, s) <= round_trip))
+        self.lemma("dry", self.dry <= most + 1)
+        self.lemma("age_free", ~free | (age <= t.standby + self.dry))
+        self.lemma("age_preparing", ~(ready & s.probe("preparing")) | (age <= last + s.probe("step")))
+        self.lemma("age_refreshing", ~(ready & s.probe("refreshing")) | (age < t.forced))
+
+    def _between(self) -> None:
+        """Idle again in time for the next request, after the bus's last one and after a refresh of our own."""
         s, b, asked = self.scene, self.bounds, self.asked
         self.lemma("before", asked.before == s.probe("request_before"))
         self.lemma("held", ~asked.before | (self.kind_before == s.probe("held")))
-        idle, rests = _ranks(self.m, s)
+        self.until_idle, self.until_rest = idle, rests = _ranks(self.m, s)
         turn = Turn(self.m, s, self.request)
         self.lemma("turn", turn.proper)
         free = s.probe("ready") & ~self.request.second
@@ -123,12 +140,12 @@ class Served(Checker):
             self.lemma(f"{name}_free", ~free | by_bus | by_us)
         ended = (asked.lasted + 1 >= self.high) & (self.since_quiet + 1 >= b.notice_ticks)
         self.lemma("follows", ~(free & ended) | turn.follows)
-        self._while_asked(idle, rests)
 
-    def _while_asked(self, idle: Signal, rests: Signal) -> None:
+    def _while_asked(self) -> None:
         """How far a request has come, from how long it has been there and RD or WR beside it."""
         s, t = self.scene, self.scene.design.ticks
         step, lasted, beside = s.probe("step"), self.asked.lasted, self.beside
+        idle, rests = self.until_idle, self.until_rest
         under_way = self.request.second & s.probe("ready") & ~self.asked.began
         refresh, access = under_way & s.probe("refresh"), under_way & ~s.probe("refresh")
         after_row = max(t.precharge - 2, t.column_rest - 2, 0) + 1
