@@ -147,13 +147,15 @@ def test_device_figures() -> None:
     """DS1040 v3.4: tCO 5.41, LVCMOS33 adders 0.16 and 0.17, tSU from -0.08 down to -0.63 ns.
 
     An input pad is over before the clock has come its way (tSU below zero), and clock's way and output pad are tCO: so
-    each pad alone, and one of each together, stay within tCO.
+    each pad alone, and one of each together, stay within tCO. The sheet counts without load: 15 pF into 50 ohm
+    (0.4 V at 8 mA) take 0.7 x 50 x 15 = 525 ps more.
     """
     device = catalogue.device("ice40hx1k-vq100")
+    loaded = 530
     assert device.input_pad.hi_ps == 5410 + 160
     assert device.pads_together is not None
-    assert device.pads_together.hi_ps == 5410 + 160 + 170
-    assert device.output_pad.hi_ps == 5410 + 170
+    assert device.pads_together.hi_ps == 5410 + 160 + 170 + loaded
+    assert device.output_pad.hi_ps == 5410 + 170 + loaded
     assert device.flip_flop_window.hi_ps == 630
     assert (device.input_pad.lo_ps, device.output_pad.lo_ps) == (None, None)
     assert device.before_routing_input.source.mark is Mark.PRACTICE
@@ -165,6 +167,7 @@ def test_device_figures() -> None:
         ("SN74AHCT541", (1000, 9500), 12000, 12000),  # SCLS269P
         ("SN74AHCT244", (1000, 9500), 13000, 13000),  # SCLS228O
         ("SN74LVC245A", (1500, 6300), 8500, 7500),  # SCAS218T
+        ("SN74LVC8T245", (500, 4400), 8100, 8200),  # SCES584B
         ("SN74LS244", (None, 18000), 30000, 25000),  # SDLS144D
         ("SN74LS245", (None, 12000), 40000, 28000),  # SDLS146B
     ],

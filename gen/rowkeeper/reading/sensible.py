@@ -267,9 +267,24 @@ def check_channels(nets: Sequence[Net], data_width: int, problems: Problems) -> 
                 )
 
 
+def _check_rating(net: Net, problems: Problems) -> None:
+    """The last part on a net is rated for the load behind it, or its sheet tells what more load costs."""
+    load = next((element for element in net.through if element.kind == "load"), None)
+    part = next((element.part for element in reversed(net.through) if element.part is not None), None)
+    if load is None or part is None or part.load_slope_ps is not None:
+        return
+    if load.load_ff > part.load_rated_pf * 1000:
+        problems.add(
+            load.at,
+            f"the delay of {part.name} is given for {part.load_rated_pf} pF; its sheet does not tell what more costs",
+            "lighten the net, or take a part whose delay is known at this load",
+        )
+
+
 def check_loads(nets: Sequence[Net], bank: Bank, problems: Problems) -> None:
     """An output names its load, and at least that of the chip inputs on it."""
     for net in nets:
+        _check_rating(net, problems)
         if net.side != "output" or not net.through:
             continue
         load = next((element for element in net.through if element.kind == "load"), None)
