@@ -5,6 +5,7 @@ is.
 """
 
 from collections.abc import Iterable, Mapping, Sequence
+from typing import TypeVar
 
 from rowkeeper.reading.describe import CatalogRow, FigureRow
 from rowkeeper.reading.figures import Mark
@@ -14,10 +15,11 @@ from rowkeeper.sheets.tables import MEMORY_MARK, lines_text
 __all__ = ["catalogue_text", "figures_text"]
 
 _HEADINGS = ("symbol", "grade", "min", "max", "unit", "source", "note")
+Name = TypeVar("Name", bound=str)
 _RIGHT = frozenset({"min", "max"})
 
 
-def catalogue_text(kinds: Mapping[str, Iterable[CatalogRow]]) -> str:
+def catalogue_text(kinds: Mapping[Name, Iterable[CatalogRow]]) -> str:
     """Every kind of part with the names, titles and chief figures in the catalogue."""
     return lines_text(*(_kind(kind, list(rows)) for kind, rows in kinds.items()))
 
