@@ -15,7 +15,7 @@ import click
 
 from rowkeeper import __version__, tools
 from rowkeeper.reading.problems import Refused
-from rowkeeper.run.output import OutputRefused
+from rowkeeper.run.output import OutputRefused, UnknownNameError
 from rowkeeper.run.progress import Progress
 
 if TYPE_CHECKING:
@@ -139,7 +139,7 @@ def _guarded(command: Callable[[], object]) -> int:
     except Refused as refused:
         click.echo(str(refused), err=True)
         return 2
-    except OutputRefused as refused:
+    except (OutputRefused, UnknownNameError) as refused:
         click.echo(f"rowkeeper: {refused}", err=True)
         return 2
     except click.exceptions.Exit as stop:

@@ -10,11 +10,15 @@ import tempfile
 from collections.abc import Mapping
 from pathlib import Path, PurePosixPath
 
-__all__ = ["OutputRefused", "write_all"]
+__all__ = ["OutputRefused", "UnknownNameError", "write_all"]
 
 
 class OutputRefused(Exception):
     """The target cannot be written; the message says why."""
+
+
+class UnknownNameError(Exception):
+    """A name that the catalogue or the plan does not have."""
 
 
 def write_all(folder: Path, files: Mapping[str, bytes]) -> None:

@@ -20,20 +20,24 @@ from rowkeeper.contract import (
     Verdict,
 )
 from rowkeeper.fit.fitting import fit
-from rowkeeper.judging.bench.compiled import BuildFailed, CompiledBench, build
-from rowkeeper.judging.bench.icarus import run_icarus
+from rowkeeper.judging.bench.compiled import BuildError, CompiledBench, build
+from rowkeeper.judging.bench.icarus import agree, build_icarus
 from rowkeeper.judging.bench.outcome import not_run
 from rowkeeper.judging.bench.scenario import CORNERS, scenarios
+from rowkeeper.judging.claims.bounds import Bounds
 from rowkeeper.judging.claims.catalogue import claims
 from rowkeeper.judging.claims.proving import ShortTexts, prove_all
 from rowkeeper.judging.claims.short import shortened
 from rowkeeper.judging.verdict import bench_findings, claim_findings, fit_findings, plan_findings, verdict_of
-from rowkeeper.logic.emit import probe_text, rtlil_text
+from rowkeeper.logic.emit import rtlil_text
+from rowkeeper.logic.invariants import probe_text
 from rowkeeper.logic.replacement import ports_of
 from rowkeeper.logic.spoiled import variants
+from rowkeeper.logic.verilog import verilog_text
 from rowkeeper.reading.board import Board
 from rowkeeper.reading.figures import Window
 from rowkeeper.run.progress import Progress
+from rowkeeper.timing.bus_in_ticks import bus_in_ticks
 from rowkeeper.timing.paths import default_delays, net_windows
 from rowkeeper.timing.plan import design_of, judge, settle
 from rowkeeper.tools import TimedOut, ToolMissing, available
@@ -115,7 +119,7 @@ def proved(work: Work, progress: Progress) -> Work:
         probe = probe_text(work.design)
         short = shortened(work.design)
         texts = ShortTexts(probe_text(short), variants(short))
-        bounds = work.plan.refresh
+        bounds = Bounds(**bus_in_ticks(work.board, work.delays, work.plan))
         outcomes = prove_all(claims(work.design, bounds), probe, work.subjects, texts, progress.say)
         return replace(work, claims=outcomes)
 
@@ -127,7 +131,7 @@ def benched(work: Work, progress: Progress, seed: int, subjects: Mapping[Subject
         for subject, rtlil in subjects.items():
             jobs += _compiled_jobs(work, subject, rtlil, seed, progress)
         if icarus and available("iverilog"):
-            jobs += [lambda: [run_icarus(work.board, work.design, work.rtlil, work.windows)]]
+            jobs += [lambda: _icarus(work, seed, progress)]
         found = list(pool.map(lambda job: job(), jobs))
     return replace(work, bench=tuple(outcome for outcomes in found for outcome in outcomes))
 
@@ -138,7 +142,7 @@ def _compiled_jobs(
     """One job per corner; the program is built before, once."""
     try:
         bench = build(work.board, work.design, rtlil, work.windows, subject)
-    except (ToolMissing, BuildFailed, TimedOut) as error:
+    except (ToolMissing, BuildError, TimedOut) as error:
         reason = str(error)
         chosen = scenarios(work.board)
         return [lambda: [not_run(scenario.name, "compiled", subject, "every", reason) for scenario in chosen]]
@@ -150,6 +154,22 @@ def _corner(work: Work, bench: CompiledBench, corner: str, seed: int, progress: 
     for scenario in scenarios(work.board):
         outcome = bench.run(scenario, corner, seed)
         progress.say(f"bench {outcome.scenario}, {corner}, {bench.subject}: {outcome.status.value}")
+        outcomes.append(outcome)
+    return outcomes
+
+
+def _icarus(work: Work, seed: int, progress: Progress) -> list[BenchOutcome]:
+    """The emitted bench in Icarus: every scenario short, and event by event against the compiled bench."""
+    try:
+        theirs = build_icarus(work.board, work.design, verilog_text(work.design), work.windows)
+        ours = build(work.board, work.design, work.rtlil, work.windows)
+    except (ToolMissing, BuildError, TimedOut) as error:
+        return [not_run("mix", "icarus", "logic", "random", str(error))]
+    chosen = [scenario for scenario in scenarios(work.board) if scenario.name in ("mix", "grants")]
+    outcomes = []
+    for scenario in chosen:
+        outcome = agree(ours, theirs, scenario, "random", seed)
+        progress.say(f"bench {outcome.scenario}: {outcome.status.value}")
         outcomes.append(outcome)
     return outcomes
 

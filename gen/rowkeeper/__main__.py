@@ -1,0 +1,5 @@
+"""`python -m rowkeeper`."""
+
+from rowkeeper.cli import main
+
+main()
