@@ -4,7 +4,7 @@ Takes a Scene and Bounds; statements over the pins. The bound rests on a rank: h
 strobe falls, from the sequencer's state. It is a helper, proved with the claim. Must not know picoseconds.
 """
 
-from amaranth.hdl import Const, Module, Mux, Signal, Value
+from amaranth.hdl import Const, Module, Mux, Signal
 
 from rowkeeper.judging.claims.checker import Checker
 from rowkeeper.judging.claims.scene import Scene, at_least, at_most

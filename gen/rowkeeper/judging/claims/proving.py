@@ -23,7 +23,7 @@ from rowkeeper.tools import TimedOut, ToolMissing
 
 __all__ = ["ShortTexts", "prove", "prove_all"]
 
-_SEARCH_TICKS = 110
+_SEARCH_TICKS = 130
 _SEARCH_SECONDS = 40
 _PDR_SECONDS = 60
 

@@ -10,7 +10,7 @@ from rowkeeper.judging.claims.bounds import Bounds
 
 __all__ = ["shortened", "shortened_bounds"]
 
-_DROUGHT = 12
+_DROUGHT = 32
 
 
 def shortened(design: Design) -> Design:
@@ -27,8 +27,8 @@ def shortened(design: Design) -> Design:
         column_rest=4,
         refresh_low=4,
         precharge=6,
-        standby=20,
-        forced=48,
+        standby=16,
+        forced=56,
         reset_settle=6,
         pause=6,
         warm_up_cycles=2,
