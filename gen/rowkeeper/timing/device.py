@@ -17,7 +17,7 @@ from rowkeeper.timing.bus_clock import BusClock, bus_clock, period_window
 from rowkeeper.timing.network import Network, Promise, minus
 from rowkeeper.timing.paths import Path, group_path, is_pad, skew_between, travel
 
-__all__ = ["Facts", "counted", "drive", "facts_of", "sample", "skewed", "through", "with_ticks"]
+__all__ = ["Facts", "ahead", "counted", "drive", "facts_of", "sample", "skewed", "through", "with_ticks"]
 
 _NETS = (
     *("mreq_n", "m1_n", "rd_n", "wr_n", "busreq_n", "busack_n", "reset_n", "a"),
@@ -89,6 +89,15 @@ def counted(facts: Facts, *names: str, plus: int = 0, at_least: bool = False, at
         facts.tick_lo_ps,
         facts.tick_hi_ps,
     )
+
+
+def ahead(facts: Facts, earlier: str, later: str) -> Promise:
+    """The span between two ticks that are counted from the same clock edge."""
+    total = getattr(facts.ticks, later) - getattr(facts.ticks, earlier)
+    lo, hi = sorted((total * facts.tick_lo_ps, total * facts.tick_hi_ps))
+    counts = ((later, 1), (earlier, -1))
+    name = f"{total} ticks ({later} - {earlier})"
+    return Promise(name, lo, hi, facts.tick_source, None, counts, facts.tick_lo_ps, facts.tick_hi_ps)
 
 
 def sample(network: Network, facts: Facts, net: str, event: str, seen: str) -> None:

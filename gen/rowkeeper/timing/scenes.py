@@ -6,11 +6,11 @@ not know limits.
 """
 
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from rowkeeper.reading.board import Chip
 from rowkeeper.timing.bus import CYCLES, FOLLOWERS, BusCycles, CycleKind, from_figure, request_clock
-from rowkeeper.timing.device import SYNCHRONISER, Facts, counted, drive, sample, skewed, through
+from rowkeeper.timing.device import SYNCHRONISER, Facts, ahead, counted, drive, sample, skewed, through
 from rowkeeper.timing.network import SAME, Bound, Network, Promise
 from rowkeeper.timing.paths import part_of, travel
 
@@ -214,6 +214,8 @@ def _column(scene: Scene, facts: Facts, write: bool) -> None:
     _row_strobe(network, facts, "row rises", "MREQr", "RASr")
     if write:
         skewed(network, facts, ("we_n", "WEf"), ("cas_n", "CASf"), lead)
+    if by_tick:
+        network.promise("column selected", "go", ahead(facts, "mux", "column"))
     if by_tick and not _straight(facts):
         span = counted(facts, "column", "write_lead") if write else counted(facts, "column")
         skewed(network, facts, ("ras_n", "RASf"), ("cas_n", "CASf"), span)
@@ -347,6 +349,7 @@ def _whatever(facts: Facts, chip: Chip) -> Scene:
     network.promise("row falls", "row rises", longest)
     network.promise("row falls", "column selected", counted(facts, "mux"))
     network.promise("row falls", "column falls", counted(facts, "column", at_least=True))
+    network.promise("column selected", "column falls", replace(ahead(facts, "mux", "column"), hi_ps=None))
     network.promise("column falls", "row rises", counted(facts, "row_hold"))
     network.promise("row rises", "column rises", counted(facts, plus=1, at_least=True))
     network.promise("column falls", "column rises", counted(facts, "column_cap", at_most=True))

@@ -192,7 +192,46 @@ def _pick(lines: _Lines, start: TickTable, given: GivenTicks) -> TickTable:
         one = _score(groups, choice)
         if one > score:
             best, score = choice, one
-    return replace(start, **dict(zip(_CHOSEN, best, strict=True)))
+    return _table(start, _traded(groups, best, given))
+
+
+def _table(start: TickTable, at: tuple[int, ...]) -> TickTable:
+    """The same table with these ticks in the order of _CHOSEN."""
+    mux, column, row_hold, row_setup, write_lead, column_rest, refresh_low, precharge = at
+    return replace(
+        start,
+        mux=mux,
+        column=column,
+        row_hold=row_hold,
+        row_setup=row_setup,
+        write_lead=write_lead,
+        column_rest=column_rest,
+        refresh_low=refresh_low,
+        precharge=precharge,
+    )
+
+
+def _traded(groups: list[Group], at: tuple[int, ...], given: GivenTicks) -> tuple[int, ...]:
+    """What single moves cannot reach: one tick more here for one or two fewer there, until nothing gets better."""
+    open_ticks = [i for i, name in enumerate(_CHOSEN) if not _given(given, name)]
+    if given.row_end is not None and given.column is None:
+        open_ticks.remove(1)  # the column tick and the hold would have to move together
+    score = _score(groups, at)
+    before: tuple[int, ...] | None = None
+    while at != before:
+        before = at
+        for i in open_ticks:
+            for j in open_ticks:
+                for fewer in (0, 1, 2):
+                    choice = list(before)
+                    choice[i] += 1
+                    choice[j] -= fewer
+                    if i == j or choice[j] < _LEAST[_CHOSEN[j]] or choice[0] >= choice[1]:
+                        continue
+                    one = _score(groups, tuple(choice))
+                    if one > score:
+                        at, score = tuple(choice), one
+    return at
 
 
 def _span(ticks: int, least: int) -> range:
