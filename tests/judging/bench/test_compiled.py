@@ -136,7 +136,7 @@ def test_a_board_delay_that_breaks_a_limit_fails() -> None:
 
 
 def test_a_missing_compiler_is_not_run_and_says_so(monkeypatch: pytest.MonkeyPatch) -> None:
-    def missing(program: str, *arguments: object, **options: object) -> None:
+    def missing(program: str, *_: object, **__: object) -> None:
         raise ToolMissing(program)
 
     monkeypatch.setattr(compiled_module, "run_tool", missing)

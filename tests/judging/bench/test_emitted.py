@@ -147,7 +147,7 @@ def test_engines_on_different_logic_do_not_agree() -> None:
 
 
 def test_a_missing_icarus_is_not_run_and_says_so(monkeypatch: pytest.MonkeyPatch) -> None:
-    def missing(program: str, *arguments: object, **options: object) -> None:
+    def missing(program: str, *_: object, **__: object) -> None:
         raise ToolMissing(program)
 
     monkeypatch.setattr(icarus_module, "run_tool", missing)

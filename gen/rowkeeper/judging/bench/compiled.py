@@ -23,10 +23,11 @@ __all__ = ["BuildError", "CompiledBench", "build", "run_compiled"]
 _HERE = Path(__file__).parent
 _ENGINE = ("basics.h", "memory.h", "board.h", "bus.h", "program.h", "main.cc")
 _TIMEOUT_S = 600.0
-# Net splitting takes apart words of which one bit feeds another, so that one evaluation settles the logic.
+# Gates of a netlist become the operators they stand for. Net splitting takes apart words of which one bit feeds
+# another, so that one evaluation settles the logic.
 _TO_CXX = (
-    "read_rtlil logic.il; hierarchy -top rowkeeper_logic; proc; flatten; opt -full; splitnets -driver; opt -full; "
-    "clean; write_cxxrtl -O6 -g0 logic.cc"
+    "read_rtlil logic.il; hierarchy -top rowkeeper_logic; techmap -autoproc -map +/simcells.v; proc; flatten; opt -full; "
+    "splitnets -driver; opt -full; clean; write_cxxrtl -O6 -g0 logic.cc"
 )
 
 
