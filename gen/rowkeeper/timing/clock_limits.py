@@ -80,7 +80,7 @@ def _margin(figure: Figure, sense: str, required: int, terms: list[Term]) -> Mar
         "bus clock",
         "",
         "min" if lower else "max",
-        "hard" if margin < 0 else "reference",
+        "hard",
         required,
         total if lower else None,
         None if lower else total,
