@@ -52,7 +52,9 @@ class LegalBus(Gaps):
     assumptions = (
         "mreq-low",
         "mreq-high",
+        "mreq-period",
         "strobe-length",
+        "strobe-period",
         "grant-silent",
         "reset-silent",
         "awake",
@@ -67,7 +69,7 @@ class LegalBus(Gaps):
         self.request = Seen(self.m, s, "mreq")
         self.read, self.write = Seen(self.m, s, "rd"), Seen(self.m, s, "wr")
         account_seen(self, self.request, self.read, self.write)
-        longest = 2 * (b.request_low_ticks + max(b.request_high_ticks, b.refresh_high_ticks) + row_limit)
+        longest = 2 * (b.request_period_ticks + b.request_low_ticks + row_limit)
         self.asked = Stopwatch(self.m, self.request.second, longest, "request")
         self.target = Target(self.m, s, self.request, self.row)
         for name, holds in self.target.proper.items():
@@ -85,20 +87,44 @@ class LegalBus(Gaps):
         self.kind_before = Signal(name="kind_before")  # of the request under way, or of the last one
         with self.m.If(self.request.second):
             self.m.d.sync += self.kind_before.eq(s.probe("refresh"))
-        self.high = Mux(self.kind_before, b.refresh_high_ticks, b.request_high_ticks)
         self.assume("mreq_low", ~asked.over | (asked.ended >= b.request_low_ticks))
-        self.assume("mreq_high", ~asked.began | (asked.ended >= self.high))
-        # How long RD or WR has been seen beside the request, up to the tick before.
-        self.beside = Signal(range(asked.limit + 1), name="beside")
-        strobe = self.request.second & (self.read.second | self.write.second)
-        self.m.d.sync += self.beside.eq(Mux(strobe, at_most(self.beside + 1, asked.limit), 0))
-        self.assume("strobe_length", ~asked.over | self.kind_before | (self.beside >= b.strobe_ticks))
+        self.assume("mreq_high", ~asked.began | (asked.ended >= b.request_high_ticks))
+        begun_before = Signal(range(asked.limit + 1), name="begun_before_ticks")
+        self.since_request = Signal(range(asked.limit + 1), name="since_request")
+        self.m.d.comb += self.since_request.eq(Mux(asked.began, 0, begun_before))
+        self.m.d.sync += begun_before.eq(at_most(self.since_request + 1, asked.limit))
+        self.assume("mreq_period", ~asked.began | (begun_before >= b.request_period_ticks))
+        self._assume_strobes()
         loud = Stopwatch(self.m, s.probe("quiet") | ~s.probe("ready"), b.notice_ticks + 2, "not_loud")
         self.since_quiet = Mux(loud.level, 0, loud.lasted + 1)
         self.assume("grant_silent", ~(self.request.second & s.probe("granted")))
         self.assume("reset_silent", ~(self.request.second & s.probe("quiet")))
         self.assume("reset_silent_notice", ~asked.began | (self.since_quiet >= b.notice_ticks))
         self.assume("awake", ~self.request.second | s.probe("ready"))
+
+    def _assume_strobes(self) -> None:
+        """RD or WR beside an access: it comes, stays for a while, and the next request is not soon after."""
+        b, asked = self.bounds, self.asked
+        request = self.request.second
+        # `beside`: ticks with RD or WR in this request, up to the tick before.
+        self.beside = Signal(range(asked.limit + 1), name="beside")
+        self.strobe_before, strobe = Signal(name="strobe_before"), Signal(name="strobe")
+        self.m.d.comb += strobe.eq(request & (self.read.second | self.write.second))
+        self.m.d.sync += [
+            self.strobe_before.eq(strobe),
+            self.beside.eq(Mux(request, at_most(self.beside + strobe, asked.limit), 0)),
+        ]
+        strobe_ticks = Signal(range(asked.limit + 1), name="since_strobe_before")
+        self.since_strobe = Signal(range(asked.limit + 1), name="since_strobe")
+        self.m.d.comb += self.since_strobe.eq(Mux(strobe & (self.beside == 0), 0, strobe_ticks))
+        self.m.d.sync += strobe_ticks.eq(at_most(self.since_strobe + 1, asked.limit))
+        enough = self.beside >= b.strobe_ticks
+        self.assume("strobe_length", ~asked.over | self.kind_before | enough)
+        self.assume("strobe_length_stays", ~(request & self.strobe_before & ~strobe) | enough)
+        self.assume("strobe_period", ~asked.began | (strobe_ticks >= b.strobe_period_ticks))
+        self.lemma("beside_most", ~request | (self.beside <= asked.lasted))
+        self.lemma("beside_none", ~asked.began | (self.beside == 0))
+        self.lemma("beside_stays", ~request | (self.beside == 0) | enough | self.strobe_before)
 
     def _assume_drought(self) -> None:
         """Relief: a refresh request, or a quiet tick with the sequencer idle."""
@@ -132,19 +158,27 @@ class LegalBus(Gaps):
         turn = Turn(self.m, s, self.request)
         self.lemma("turn", turn.proper)
         free = s.probe("ready") & ~self.request.second
+        clocks = (
+            (asked.lasted, b.request_high_ticks),
+            (self.since_request, b.request_period_ticks),
+            (self.since_strobe, b.strobe_period_ticks),
+            (self.since_quiet, b.notice_ticks),
+        )
         for name, rank, early in (("idle", idle, 0), ("rests", rests, 2)):
-            high = self.high - early
-            notice = b.notice_ticks - early
-            by_bus = rank + Mux(asked.lasted < high, asked.lasted, high) <= high
-            by_us = rank + at_most(self.since_quiet, notice) <= notice
-            self.lemma(f"{name}_free", ~free | by_bus | by_us)
-        ended = (asked.lasted + 1 >= self.high) & (self.since_quiet + 1 >= b.notice_ticks)
+            in_time: Value = Const(0)
+            for ticks, most in clocks:
+                in_time = in_time | (rank + at_most(ticks, most - early) <= most - early)
+            self.lemma(f"{name}_free", ~free | in_time)
+        ended: Value = Const(1)
+        for ticks, most in clocks:
+            ended = ended & (ticks + 1 >= most)
+        self.lemma("since_request", ~self.request.second | (self.since_request == asked.lasted))
         self.lemma("follows", ~(free & ended) | turn.follows)
 
     def _while_asked(self) -> None:
         """How far a request has come, from how long it has been there and RD or WR beside it."""
         s, t = self.scene, self.scene.design.ticks
-        step, lasted, beside = s.probe("step"), self.asked.lasted, self.beside
+        step, lasted, since_strobe = s.probe("step"), self.asked.lasted, self.since_strobe
         idle, rests = self.until_idle, self.until_rest
         under_way = self.request.second & s.probe("ready") & ~self.asked.began
         refresh, access = under_way & s.probe("refresh"), under_way & ~s.probe("refresh")
@@ -158,10 +192,10 @@ class LegalBus(Gaps):
         self.lemma("begin_idle", ~(self.asked.began & s.probe("ready")) | (s.probe("idle") & ~s.probe("served")))
         self.lemma("served", ~under_way | s.probe("served"))
         self.lemma("access", ~(access & s.probe("access")) | (lasted == step + 1))
-        self.lemma("access_bare", ~(access & s.probe("access") & (step >= t.column)) | (beside == 0))
+        self.lemma("access_bare", ~(access & s.probe("access") & (step >= t.column)) | (self.beside == 0))
         write = Mux(s.write, t.write_lead, 0)
         for name, since in (("reading", step), ("writing", step), ("holding", step + t.row_hold + write)):
-            on_time = (beside <= since + 1) | (lasted <= t.column + 1 + since)
+            on_time = (since_strobe <= since + 1) | (lasted <= t.column + 1 + since)
             self.lemma(f"on_time_{name}", ~(access & s.probe(name)) | on_time)
-        rested = (beside <= s.probe("rest") + 1) | (s.probe("rest") >= t.precharge)
+        rested = (self.beside == 0) | (since_strobe <= s.probe("rest") + 1) | (s.probe("rest") >= t.precharge)
         self.lemma("on_time_resting", ~(access & s.probe("resting")) | rested)

@@ -41,10 +41,11 @@ def shortened_bounds(design: Design) -> Bounds:
     t = design.ticks
     return Bounds(
         request_low_ticks=t.row_end + 4,
-        request_high_ticks=t.rest + 2,
-        refresh_high_ticks=t.rest + 4,
-        strobe_ticks=t.row_hold + t.write_lead + 4,
-        notice_ticks=t.row_setup + t.refresh_low + t.rest + 4,
+        request_high_ticks=t.rest,
+        request_period_ticks=t.row_end + t.rest + t.refresh_low + t.row_setup,
+        strobe_ticks=t.column + 2,
+        strobe_period_ticks=t.write_lead + t.row_hold + t.rest + 2,
+        notice_ticks=t.row_setup + t.refresh_low + t.rest,
         drought_ticks=_DROUGHT,
         legal_gap_ticks=t.legal_gap(_DROUGHT),
     )
