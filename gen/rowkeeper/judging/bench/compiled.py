@@ -26,8 +26,8 @@ _TIMEOUT_S = 600.0
 # Gates of a netlist become the operators they stand for. Net splitting takes apart words of which one bit feeds
 # another, so that one evaluation settles the logic.
 _TO_CXX = (
-    "read_rtlil logic.il; hierarchy -top rowkeeper_logic; techmap -autoproc -map +/simcells.v; proc; flatten; opt -full; "
-    "splitnets -driver; opt -full; clean; write_cxxrtl -O6 -g0 logic.cc"
+    "read_rtlil logic.il; hierarchy -top rowkeeper_logic; techmap -autoproc -map +/simcells.v; proc; flatten; "
+    "opt -full; splitnets -driver; opt -full; clean; write_cxxrtl -O6 -g0 logic.cc"
 )
 
 

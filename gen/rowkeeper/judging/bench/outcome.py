@@ -134,7 +134,8 @@ def _sentence(board: Board, violation: Violation) -> str:
         source = chip.refresh_source
     elif check in ("pause", "wake_up"):
         source = chip.warm_up_source
-    said = _SENTENCES.get(check)
+    assumed = board.bus.assumptions.get(check.replace("_", "-"))
+    said = f"the bus model broke what is assumed of it: {assumed}" if assumed else _SENTENCES.get(check)
     numbers = f"{symbol} {violation.measured} ps against {violation.limit} ps"
     if check in ("data", "contention", "enable", "wake_up", "drought", "tRPC"):
         numbers = symbol

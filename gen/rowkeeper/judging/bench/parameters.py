@@ -236,10 +236,12 @@ def _lengths(board: Board, design: Design) -> list[tuple[str, int]]:
     long_reset = _LONG_RESET_PS if worst.reset_max_ps is None else min(_LONG_RESET_PS, worst.reset_max_ps)
     return [
         ("READY_AT", _up(ready)),
+        ("WAIT_CLOCKS", -int(-worst.wait_max_ps / clock // 1)),
         ("IDLE_PS", _up(idle)),
         ("HAS_GRANT", int(has_grant)),
         ("GRANT_CLOCKS", max(0, grant - 2)),
         ("LONG_RESET_PS", _up(long_reset)),
+        ("LONG_RESETS", 4),
         ("FEW_RESET_PS", _up(min(idle, long_reset))),
         ("FEW_COLUMNS", min(8, 1 << chip.column_bits)),
         ("FEWER_COLUMNS", min(2, 1 << chip.column_bits)),

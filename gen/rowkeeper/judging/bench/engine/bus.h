@@ -195,6 +195,12 @@ struct Bus {
     line(M1, cr + DRAW(TdCr_M1f), 0);
     line(RFSH, cr + DRAW(TdCr_RFSHr), 1);
   }
+  // Clocks that this machine may add to an access; the gap between refreshes is counted without them.
+  int waits() {
+    int clocks = (int)(chance.within(corner, 0, 2 * WAIT_CLOCKS) / 2);
+    drought -= clocks;
+    return clocks;
+  }
   void ends_strobes() { address_free = later(rose[MREQ], later(rose[RD], rose[WR])) + TdCTr_A; }
   void hold_data() { if (held) hold_at = rose[RD]; }
 
@@ -227,7 +233,7 @@ struct Bus {
     if (stopped()) return;
     mreq_falls(cf + DRAW(TdCf_MREQf), FETCH);
     rd_falls(cf + DRAW(TdCf_RDf), !inside(a));
-    idle(1);
+    idle(1 + waits());
     if (stopped()) return;
     tick();
     if (stopped()) return;
@@ -244,7 +250,7 @@ struct Bus {
     if (stopped()) return;
     mreq_falls(cf + DRAW(TdCf_MREQf), ACCESS);
     rd_falls(cf + DRAW(TdCf_RDf), !inside(a));
-    idle(2);
+    idle(2 + waits());
     if (stopped()) return;
     sample(a, TsD_Cf);
     mreq_rises(cf + DRAW(TdCf_MREQr));
@@ -266,7 +272,7 @@ struct Bus {
     idle(1);
     if (stopped()) return;
     line(WR, later(cf + DRAW(TdCf_WRf), data_at + TdD_WRf), 0);
-    idle(1);
+    idle(1 + waits());
     if (stopped()) return;
     mreq_rises(cf + DRAW(TdCf_MREQr));
     line(WR, later(cf + DRAW(TdCf_WRr), fell[WR] + TwWR), 1);

@@ -75,7 +75,9 @@ struct Program {
       Time length = clock * (3 + (i % 8 == 7 ? chance.below(400) : chance.below(16)));
       strike_at(bus.now + 100 + even(25 * clock * i / strikes), length + 4 * clock);
     }
-    reset_for(bus.now + 100, full ? LONG_RESET_PS : FEW_RESET_PS);
+    unsigned count = full ? LONG_RESETS : 1;
+    for (unsigned i = 0; i < count; i++)
+      reset_for(bus.now + 100 + even(5 * clock * i / count), full ? LONG_RESET_PS : FEW_RESET_PS);
     verify();
   }
 
