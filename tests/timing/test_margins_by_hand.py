@@ -161,6 +161,28 @@ def test_ready_for_the_refresh_after_a_fetch() -> None:
     assert rested - 12 * TICK_HI == margin("ready", "opcode fetch", "refresh", word="row").margin_ps == 91_115
 
 
+def test_the_grant_is_known_to_be_over() -> None:
+    """BUSACK rises at most 90 ns after Cf, MREQ falls a period after that Cf at the earliest."""
+    found = margin("grant over", "own refresh", "memory read after a grant")
+    assert PERIOD - 90_000 + IN_LO - IN_HI == found.margin_ps == 146_175
+
+
+def test_ready_for_the_first_cycle_after_a_grant() -> None:
+    """The same sum as the arbitration's, with TsBUSREQ 50 ns that the bus must keep."""
+    available = 50_000 + PERIOD + HALF + SEEN_LO
+    begun = IN_HI + TICK_HI + TICK_HI
+    found = margin("ready", "own refresh", "opcode fetch after a grant", word="row strobe")
+    assert available - begun - (3 + 17 + 12) * TICK_HI == found.margin_ps
+
+
+def test_ready_for_the_first_fetch_after_a_reset() -> None:
+    """Two clocks of restart, and no set-up to count on."""
+    available = 2 * PERIOD + HALF + SEEN_LO
+    begun = IN_HI + TICK_HI + TICK_HI
+    found = margin("ready", "own refresh", "opcode fetch after a reset", word="row strobe")
+    assert available - begun - (3 + 17 + 12) * TICK_HI == found.margin_ps
+
+
 def test_tRC_between_a_fetch_and_its_refresh() -> None:
     """Falling edge to falling edge of one path: its delay counts for nothing."""
     between = 2 * PERIOD - 85_000 + SEEN_LO - SEEN_HI
@@ -185,7 +207,7 @@ def test_derating_follows_the_note(cycle_ps: int, degrees: str) -> None:
 def test_a_cycle_shorter_than_its_parts_is_broken() -> None:
     """tRAS 150 + tRP 100 + 2 x 5 of transition: below 260 ns no cooling helps."""
     short = replace(TICKS, refresh_low=15, precharge=7)
-    found = [m for m in margins(ticks=short) if m.symbol == "tRC" and m.cycle == "own refresh"]
+    found = [m for m in margins(ticks=short) if m.symbol == "tRC" and m.neighbour == "own refresh"]
     assert [(m.kind, m.margin_ps) for m in found] == [("hard", (15 + 7 + 3) * TICK_LO - 375_000)]
 
 

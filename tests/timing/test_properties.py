@@ -15,7 +15,7 @@ from timing.hand_built import CHIP_4116_15, LOOM, clock, device, ns
 TICKS = TickTable("counted", 3, 4, 6, 12, 1, 60, 200, 3, 17, 12, 400, 1490, 80, 20000, 8)
 Key = tuple[str, ...]
 
-few = settings(max_examples=15, deadline=None)
+few = settings(max_examples=8, deadline=None)
 
 
 def table(board: Board, ticks: TickTable = TICKS) -> dict[Key, Judged]:

@@ -2,8 +2,7 @@
 
 Takes the board's clock and the bus grade; gives margins and notes. A grade is rated by nominal frequency, so TcC is
 judged on it, and the widths on their shares of the nominal period; where the tolerance dips below, a note says so.
-Duty and edges are judged at their worst. A limit that is met is a reference: what is left of it is no margin of the
-plan. Must not know cycles or ticks.
+Duty and edges are judged at their worst. Must not know cycles or ticks.
 """
 
 from dataclasses import replace

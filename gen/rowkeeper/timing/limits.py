@@ -221,6 +221,13 @@ def column_capped(_scene: Scene, _facts: Facts) -> list[Rule]:
     return [Rule("column cap", "request over", "capped", "min", asked, note="the bus ends the cycle before the cap")]
 
 
+def grant_over(_scene: Scene, facts: Facts) -> list[Rule]:
+    """BUSACK is known to have risen at the very edge that first sees MREQ, or the access would be left alone."""
+    asked = Promise("aperture of the flip-flop of BUSACK", facts.aperture_ps, None, facts.aperture.source)
+    note = "BUSACK known to be over when MREQ is first seen"
+    return [Rule("grant over", "BUSACKr arrives", "next MREQf seen", "min", asked, note=note)]
+
+
 def ready(scene: Scene, facts: Facts) -> list[Rule]:
     """Back at rest before the next request can be taken: its strobe is on time and its address was followed."""
     if scene.neighbour == "interrupt acknowledge" or facts.ticks.style == "straight":
@@ -241,4 +248,4 @@ WITHIN: tuple[_Maker, ...] = (
     *(chip_within, column_delay, data_in_time, data_held, cycle_kind),
     *(address_captured, seen_in_time, column_capped),
 )
-BETWEEN: tuple[_Maker, ...] = (chip_between, row_cycle, turnaround, ready)
+BETWEEN: tuple[_Maker, ...] = (chip_between, row_cycle, turnaround, grant_over, ready)

@@ -103,11 +103,13 @@ def derated_ambient(cycle_ps: int) -> Fraction:
 
 
 def _eased(margin: Margin, chip: Chip) -> Margin:
-    """tRC of the MK4116: a cycle shorter than tRC, but not than its parts, lowers the ambient and breaks nothing."""
-    if margin.symbol != "tRC" or margin.margin_ps >= 0 or "MK4116" not in margin.source.document:
+    """tRC of the MK4116 is a rating: a shorter cycle lowers the ambient, until it is shorter than its parts."""
+    if margin.symbol != "tRC" or "MK4116" not in margin.source.document:
         return margin
     if (margin.earliest_ps or 0) < _parts_of_cycle(chip):
         return margin
+    if margin.margin_ps >= 0:
+        return replace(margin, kind="reference")
     degrees = derated_ambient(margin.earliest_ps or 1)
     text = f"derated: ambient at most {_tenths(degrees)} degrees C at this cycle time ({_DERATED})"
     return replace(margin, kind="reference", note=f"{margin.note}; {text}" if margin.note else text)

@@ -13,14 +13,12 @@ from rowkeeper.timing.bus import CYCLES, FOLLOWERS, BusCycles, CycleKind, from_f
 from rowkeeper.timing.device import SYNCHRONISER, Facts, ahead, counted, drive, sample, skewed, through
 from rowkeeper.timing.network import SAME, Bound, Network, Promise
 from rowkeeper.timing.paths import part_of, travel
+from rowkeeper.timing.strobes import follow, is_straight, next_access, next_cycle, refresh, requests, row_strobe
 
 __all__ = ["Scene", "chips_of", "scenes"]
 
 _SPARE_CLOCKS = 3
-_SEEN = (
-    *(("MREQf", "mreq_n"), ("MREQr", "mreq_n"), ("RDf", "rd_n"), ("RDr", "rd_n"), ("WRf", "wr_n")),
-    *(("M1f", "m1_n"), ("M1r", "m1_n"), ("next MREQf", "mreq_n"), ("next M1f", "m1_n")),
-)
+_ACCESSES: tuple[CycleKind, ...] = ("opcode fetch", "memory read", "memory write")
 
 
 @dataclass(frozen=True, slots=True)
@@ -47,26 +45,14 @@ def chips_of(facts: Facts) -> tuple[Chip, ...]:
 def scenes(facts: Facts) -> Iterator[Scene]:
     """Every scene that can happen."""
     for chip in chips_of(facts):
-        if not _straight(facts):
+        if not is_straight(facts):
             yield _whatever(facts, chip)
             yield _own_refreshes(facts, chip)
+            yield from _after_notice(facts, chip)
         for kind in CYCLES:
             for follower in FOLLOWERS[kind]:
                 for waits in _waits(facts, kind):
                     yield from _pair(facts, chip, kind, follower, waits)
-
-
-def _straight(facts: Facts) -> bool:
-    """Whether the row strobe is MREQ itself, passed through the device without a clock."""
-    return facts.ticks.style == "straight"
-
-
-def _row_strobe(network: Network, facts: Facts, edge: str, line: str, event: str) -> None:
-    """The row strobe moves with a clock edge of the device, or with the bus where it is passed straight through."""
-    if _straight(facts):
-        travel(network, line, event, facts.paths["mreq_n"].then(facts.paths["ras_n"]))
-    else:
-        drive(network, facts, "ras_n", edge, event)
 
 
 def _waits(facts: Facts, kind: CycleKind) -> tuple[int, ...]:
@@ -87,48 +73,20 @@ def _pair(facts: Facts, chip: Chip, kind: CycleKind, follower: CycleKind, waits:
     bus.finish(kind, 1, waits)
     bus.begin(follower, second, "next ")
     bus.between()
-    _requests(network, facts)
-    _next_cycle(network, facts, follower)
+    requests(network, facts)
+    next_cycle(network, facts, follower)
     within = follower == FOLLOWERS[kind][0]
     note = f"{waits} waits" if waits else ""
     scene = Scene(network, chip, kind, follower, note, within)
     if kind == "interrupt acknowledge":
         yield scene
     elif kind == "refresh":
-        _refresh(network, facts, "")
-        _follow(network, facts, "row rises")
+        network.promise("on time", "turn", SAME)
+        refresh(network, facts, "")
+        follow(network, facts, "row rises")
         yield scene
     else:
         yield from _access(scene, facts, kind)
-
-
-def _requests(network: Network, facts: Facts) -> None:
-    """When the device sees the lines of both cycles."""
-    for event, net in _SEEN:
-        if network.holds(event):
-            sample(network, facts, net, event, f"{event} seen")
-    for event in ("A", "A ends", "next A"):
-        if network.holds(event):
-            travel(network, event, f"{event} arrives", facts.paths["a"])
-    for prefix in ("", "next "):
-        if network.holds(f"{prefix}MREQf seen"):
-            network.promise(f"{prefix}MREQf seen", f"{prefix}on time", counted(facts, plus=SYNCHRONISER))
-
-
-def _refresh(network: Network, facts: Facts, prefix: str) -> None:
-    """A refresh: the row goes out at once, the row strobe follows after `row_setup`."""
-    if not prefix:
-        network.promise("on time", "turn", SAME)
-    span = counted(facts, "row_setup")
-    network.promise(f"{prefix}turn", f"{prefix}row falls", span)
-    _row_strobe(network, facts, f"{prefix}row falls", f"{prefix}MREQf", f"{prefix}RASf")
-    if prefix:
-        return
-    drive(network, facts, "ma", "turn", "row address")
-    network.promise("row falls", "row rises", counted(facts, "refresh_low"))
-    _row_strobe(network, facts, "row rises", "MREQr", "RASr")
-    network.promise("row rises", "address released", counted(facts, plus=1, at_least=True))
-    drive(network, facts, "ma", "address released", "row address ends")
 
 
 def _access(scene: Scene, facts: Facts, kind: CycleKind) -> Iterator[Scene]:
@@ -136,7 +94,7 @@ def _access(scene: Scene, facts: Facts, kind: CycleKind) -> Iterator[Scene]:
     network = scene.network
     write = kind == "memory write"
     network.promise("on time", "row falls", SAME)
-    _row_strobe(network, facts, "row falls", "MREQf", "RASf")
+    row_strobe(network, facts, "row falls", "MREQf", "RASf")
     _row(network, facts)
     network.promise("row falls", "column selected", counted(facts, "mux"))
     drive(network, facts, "ma", "column selected", "column address")
@@ -150,7 +108,7 @@ def _access(scene: Scene, facts: Facts, kind: CycleKind) -> Iterator[Scene]:
         ends = (("row hold", "row held on"), ("MREQ", "request over"))
         for last in _later(case, facts, ends[0][1], ends[1][1], ("ended by row hold", "ended by MREQ"), "column rises"):
             _end(last.network, facts, write)
-            _follow(last.network, facts, "column rises")
+            follow(last.network, facts, "column rises")
             _data(last.network, facts, scene.chip, write)
             _pads(last, facts, write)
             yield last
@@ -211,12 +169,12 @@ def _column(scene: Scene, facts: Facts, write: bool) -> None:
         network.promise("go", "column falls", SAME)
     drive(network, facts, "cas_n", "column falls", "CASf")
     network.promise("column falls", "row rises", counted(facts, "row_hold"))
-    _row_strobe(network, facts, "row rises", "MREQr", "RASr")
+    row_strobe(network, facts, "row rises", "MREQr", "RASr")
     if write:
         skewed(network, facts, ("we_n", "WEf"), ("cas_n", "CASf"), lead)
     if by_tick:
         network.promise("column selected", "go", ahead(facts, "mux", "column"))
-    if by_tick and not _straight(facts):
+    if by_tick and not is_straight(facts):
         span = counted(facts, "column", "write_lead") if write else counted(facts, "column")
         skewed(network, facts, ("ras_n", "RASf"), ("cas_n", "CASf"), span)
     network.promise("row rises", "row held on", counted(facts, plus=1))
@@ -240,7 +198,7 @@ def _pads(scene: Scene, facts: Facts, write: bool) -> None:
     network, see = scene.network, counted(facts, plus=SYNCHRONISER)
     lead = (counted(facts, "write_lead"),) if write else ()
     by_tick = "by tick" in scene.case
-    if not _straight(facts):
+    if not is_straight(facts):
         through(network, facts, ("mreq_n", "MREQf"), ("ras_n", "RASf"), see)
     line = ("mreq_n", "MREQf") if by_tick else (("wr_n", "WRf") if write else ("rd_n", "RDf"))
     spans = (see, counted(facts, "column")) if by_tick else (see,)
@@ -280,64 +238,57 @@ def _data(network: Network, facts: Facts, chip: Chip, write: bool) -> None:
         network.promise("READr", "buffer floats", from_figure(buffer.disable, f"data_out: {buffer.name} disable"))
 
 
-# --- what follows ------------------------------------------------------------------------------------------------
-
-
-def _next_cycle(network: Network, facts: Facts, follower: CycleKind) -> None:
-    """The neighbour: its strobes start on time or later."""
-    if follower == "interrupt acknowledge":
-        return
-    start = "next turn" if follower == "refresh" else "next row falls"
-    network.promise("next on time", start, counted(facts, at_least=True))
-    if follower == "refresh":
-        _refresh(network, facts, "next ")
-    else:
-        _next_access(network, facts, follower == "memory write")
-    if follower == "memory write":
-        return
-    # Another reader may drive the bus as soon as RD falls.
-    if network.holds("next RDf"):
-        network.promise("next RDf", "next driver", SAME)
-
-
-def _next_access(network: Network, facts: Facts, write: bool) -> None:
-    _row_strobe(network, facts, "next row falls", "next MREQf", "next RASf")
-    network.promise("next row falls", "next go", counted(facts, "column", at_least=True))
-    if write:
-        network.promise("next go", "next column falls", counted(facts, "write_lead", at_least=True))
-        drive(network, facts, "we_n", "next go", "next WEf")
-        if network.holds("next D"):
-            network.promise("next D", "next driver", SAME)
-    else:
-        network.promise("next go", "next column falls", SAME)
-    drive(network, facts, "cas_n", "next column falls", "next CASf")
-
-
-def _follow(network: Network, facts: Facts, last: str) -> None:
-    """Rest kept by the sequencer before the next strobe, whatever the bus asks; the address outputs follow at once."""
-    network.promise(last, "address followed", counted(facts, plus=1))
-    drive(network, facts, "ma", "address followed", "next row address")
-    if _straight(facts):  # nothing holds the next row strobe back
-        return
-    for start in ("next turn", "next row falls"):
-        if network.holds(start):
-            network.promise("row rises", start, counted(facts, "precharge", at_least=True))
-            if last == "column rises":
-                network.promise(last, start, counted(facts, "column_rest", at_least=True))
-            break
-
-
 # --- without the bus ---------------------------------------------------------------------------------------------
 
 
 def _own_refreshes(facts: Facts, chip: Chip) -> Scene:
     """Two refreshes of our own back to back, as in the warm-up."""
     network = Network()
-    network.promise("on time", "turn", SAME)
-    _refresh(network, facts, "")
+    refresh(network, facts, "")
     network.promise("row rises", "next turn", counted(facts, "precharge"))
-    _refresh(network, facts, "next ")
+    refresh(network, facts, "next ")
     return Scene(network, chip, "own refresh", "own refresh", "", True)
+
+
+def _after_notice(facts: Facts, chip: Chip) -> Iterator[Scene]:
+    """A refresh of our own begun at the last moment, then the first cycle after a grant or a reset."""
+    worst, figures = facts.board.at_worst, facts.board.grade.figures
+    if facts.board.standby != "own-timer":
+        return
+    wired = {net.name for net in facts.board.wiring.nets if net.pin}
+    if worst.grant_max_ps != 0 and "busreq_n" in wired:
+        setup = figures.get("TsBUSREQ")
+        least = Promise("TsBUSREQ", 0, None, facts.clock_source)
+        if setup is not None:
+            least = Promise(setup.symbol, setup.lo_ps, None, setup.source)
+        for kind in _ACCESSES:
+            network = _bus_comes_back(facts, kind, "busreq_n", 1, least)
+            if "busack_n" in wired and "TdCf(BUSACKr)" in figures:
+                network.promise("Cf1", "BUSACKr", from_figure(figures["TdCf(BUSACKr)"]))
+                sample(network, facts, "busack_n", "BUSACKr", "BUSACKr seen")
+            yield Scene(network, chip, "own refresh", f"{kind} after a grant", "", False)
+    if worst.reset_max_ps != 0 and "reset_n" in wired:
+        nothing = Promise("RESET at any time before it is taken", 0, None, facts.clock_source)
+        clocks = facts.board.bus.traffic.reset_restart_clocks
+        network = _bus_comes_back(facts, "opcode fetch", "reset_n", clocks, nothing)
+        yield Scene(network, chip, "own refresh", "opcode fetch after a reset", "", False)
+
+
+def _bus_comes_back(facts: Facts, kind: CycleKind, net: str, clocks: int, before: Promise) -> Network:
+    """`net` is taken high at Cr1; T1 comes `clocks` later. Until the device sees it, a refresh of ours may begin."""
+    network = Network()
+    bus = BusCycles(network, facts.board.grade, facts.clock, facts.clock_source)
+    bus.clocks(1 + clocks + _SPARE_CLOCKS)
+    bus.begin(kind, 1 + clocks, "next ")
+    network.promise("notice", "Cr1", before)
+    sample(network, facts, net, "notice", "notice seen")
+    requests(network, facts)
+    network.promise("notice seen", "last turn", counted(facts, plus=SYNCHRONISER - 1))
+    network.promise("turn", "last turn", Promise("a refresh begins no later", 0, None, facts.tick_source))
+    refresh(network, facts, "")
+    next_cycle(network, facts, kind)
+    follow(network, facts, "row rises")
+    return network
 
 
 def _whatever(facts: Facts, chip: Chip) -> Scene:
@@ -366,5 +317,5 @@ def _whatever(facts: Facts, chip: Chip) -> Scene:
         ("ma", "address released", "column address ends"),
     ):
         drive(network, facts, net, edge, event)
-    _next_access(network, facts, write=False)
+    next_access(network, facts, write=False)
     return Scene(network, chip, "any access", "whatever the bus does", "", True)
