@@ -19,13 +19,15 @@ def bus_in_ticks(board: Board, delays: Delays, plan: Plan) -> Mapping[str, int]:
     """Widths of MREQ and of the strobes beside it, the notice before the bus comes back, drought and legal gap."""
     facts = facts_of(board, delays, plan.ticks)
     found = list(scenes(facts))
-    high = ("MREQr seen", "next MREQf seen")
-    strobes = (("RDf seen", "MREQr seen"), ("WRf seen", "MREQr seen"))
+    request = "next MREQf seen"
+    strobes = ("RDf seen", "WRf seen")
     return {
         "request_low_ticks": _least(facts, found, ("MREQf seen", "MREQr seen")),
-        "request_high_ticks": _least(facts, (s for s in found if s.cycle != "refresh"), high),
-        "refresh_high_ticks": _least(facts, (s for s in found if s.cycle == "refresh"), high),
-        "strobe_ticks": min(_least(facts, found, pair) for pair in strobes),
+        "request_high_ticks": _least(facts, found, ("MREQr seen", request)),
+        "request_period_ticks": _least(facts, found, ("MREQf seen", request)),
+        "strobe_ticks": min(_least(facts, found, (strobe, "MREQr seen")) for strobe in strobes),
+        "strobe_period_ticks": min(_least(facts, found, (strobe, request)) for strobe in strobes),
+        "write_after_ticks": _least(facts, found, ("MREQf seen", "WRf seen")),
         "notice_ticks": _notice(facts),
         "drought_ticks": plan.refresh.drought_ticks,
         "legal_gap_ticks": plan.refresh.legal_gap_ticks,

@@ -55,6 +55,7 @@ class LegalBus(Gaps):
         "mreq-period",
         "strobe-length",
         "strobe-period",
+        "write-after",
         "grant-silent",
         "reset-silent",
         "awake",
@@ -118,6 +119,14 @@ class LegalBus(Gaps):
         self.since_strobe = Signal(range(asked.limit + 1), name="since_strobe")
         self.m.d.comb += self.since_strobe.eq(Mux(strobe & (self.beside == 0), 0, strobe_ticks))
         self.m.d.sync += strobe_ticks.eq(at_most(self.since_strobe + 1, asked.limit))
+        had_read, self.had_write = Signal(name="had_read"), Signal(name="had_write")
+        read, write = self.read.second, self.write.second
+        self.m.d.sync += had_read.eq(request & (had_read | read))
+        self.m.d.sync += self.had_write.eq(request & (self.had_write | write))
+        self.assume("strobe_length_one", ~request | ~((had_read | read) & (self.had_write | write)))
+        self.assume("write_after", ~(request & write) | (asked.lasted >= b.write_after_ticks))
+        self.lemma("had_write", ~(request & self.had_write) | (asked.lasted > b.write_after_ticks))
+        self.lemma("had_strobe", ~request | ((self.beside != 0) == (had_read | self.had_write)))
         enough = self.beside >= b.strobe_ticks
         self.assume("strobe_length", ~asked.over | self.kind_before | enough)
         self.assume("strobe_length_stays", ~(request & self.strobe_before & ~strobe) | enough)
@@ -195,7 +204,10 @@ class LegalBus(Gaps):
         self.lemma("access_bare", ~(access & s.probe("access") & (step >= t.column)) | (self.beside == 0))
         write = Mux(s.write, t.write_lead, 0)
         for name, since in (("reading", step), ("writing", step), ("holding", step + t.row_hold + write)):
-            on_time = (since_strobe <= since + 1) | (lasted <= t.column + 1 + since)
+            # A write that comes after `column` is never ahead of its strobe.
+            early = Const(0) if self.bounds.write_after_ticks >= t.column else Const(1)
+            by_column = (lasted <= t.column + 1 + since) & (~s.write | early)
+            on_time = (since_strobe <= since + 1) | by_column
             self.lemma(f"on_time_{name}", ~(access & s.probe(name)) | on_time)
         rested = (self.beside == 0) | (since_strobe <= s.probe("rest") + 1) | (s.probe("rest") >= t.precharge)
         self.lemma("on_time_resting", ~(access & s.probe("resting")) | rested)
