@@ -146,6 +146,12 @@ def test_a_bus_clock_beyond_the_processor() -> None:
     assert "83.4 ns short. Would mend it: a slower bus clock" in text
 
 
+def test_the_bus_clock_is_refused_before_all_else() -> None:
+    """Where the processor's own limits are broken, nothing after them can be believed."""
+    texts = refusals(plan(replace(ROUTED_LIKE, bus_clock=clock("6"))))
+    assert texts[0].startswith(("TcC", "TwCh", "TwCl"))
+
+
 def test_BUSREQ_not_wired() -> None:
     """About 200 ns of a refresh run into the next access; wiring the line mends it."""
     text = only(replace(ROUTED_LIKE, wiring=wiring(7, busreq=False)), "end of a grant")

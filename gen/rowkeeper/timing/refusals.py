@@ -33,7 +33,8 @@ def refusals(plan: Plan) -> tuple[str, ...]:
     """One sentence for everything that keeps the plan from holding; none when it holds."""
     broken = [note.text for note in plan.notes if note.topic == "refused"]
     met: set[tuple[str, str]] = set()
-    for margin in plan.margins:
+    # The bus clock first: where the processor's own limits are broken, nothing after them can be believed.
+    for margin in sorted(plan.margins, key=lambda m: m.cycle != "bus clock"):
         key = margin.symbol, margin.sense
         if margin.kind == "hard" and margin.margin_ps < 0 and key not in met:
             met.add(key)

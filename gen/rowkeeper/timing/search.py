@@ -30,35 +30,46 @@ _NEVER = 10**15  # a case that cannot happen has time without end
 _PATIENCE_CLOCKS = 1  # bus clocks to spare before an access is given up or a column strobe ended
 
 Line = tuple[int, tuple[tuple[int, int], ...]]  # constant, and picoseconds per tick of each of _CHOSEN that counts
-Group = tuple[tuple[Line, ...], tuple[Line, ...], int]  # lines, guards, and how many margins move so
+Case = tuple[tuple[Line, ...], tuple[Line, ...]]  # the margin's lines, and what must not be negative for it to happen
+Group = tuple[tuple[Case, ...], int]  # the cases of a margin, and how many margins move so
+Key = tuple[str, ...]
 
 
 @dataclass(slots=True)
 class _Lines:
-    """Lines met so far. `margins`: of each hard margin; `guards`: what must not be negative for a case to happen."""
+    """Lines met so far of each hard margin, case by case, and the guards of each case."""
 
-    margins: dict[tuple[str, ...], set[Line]] = field(default_factory=dict)
-    guards: dict[tuple[str, ...], set[tuple[Line, ...]]] = field(default_factory=dict)
+    margins: dict[Key, dict[str, set[Line]]] = field(default_factory=dict)
+    guards: dict[tuple[Key, str], set[tuple[Line, ...]]] = field(default_factory=dict)
 
     def learn(self, ticks: TickTable, found: Iterable[Judged]) -> None:
         for one in found:
-            m = one.margin
-            if m.kind != "hard" or not any(name in one.per_tick for name in _CHOSEN):
+            if one.margin.kind != "hard":
                 continue
-            key = (m.symbol, m.cycle, m.neighbour, m.sense, *one.events, one.case)
-            self.margins.setdefault(key, set()).add(_line(ticks, m.margin_ps, one.per_tick))
+            key = _key(one)
+            line = _line(ticks, one.margin.margin_ps, one.per_tick)
+            self.margins.setdefault(key, {}).setdefault(one.case, set()).add(line)
             guards = tuple(_line(ticks, c.total_ps, c.per_tick) for c in one.conditions)
-            self.guards.setdefault(key, set()).add(guards)
+            self.guards.setdefault((key, one.case), set()).add(guards)
 
     def grouped(self) -> list[Group]:
-        """Margins that move alike are worked out once: their lines, their guards, how many there are."""
-        groups: dict[tuple[tuple[Line, ...], tuple[Line, ...]], int] = {}
-        for key, lines in self.margins.items():
-            guards = self.guards[key]
-            one = next(iter(guards)) if len(guards) == 1 else ()
-            group = tuple(sorted(lines)), one
+        """Margins that move alike are worked out once; those that no tick moves are left out."""
+        groups: dict[tuple[Case, ...], int] = {}
+        for key, cases in self.margins.items():
+            group = tuple(sorted({(tuple(sorted(lines)), self._guard(key, case)) for case, lines in cases.items()}))
             groups[group] = groups.get(group, 0) + 1
-        return [(lines, guards, count) for (lines, guards), count in groups.items()]
+        return [group for group in groups.items() if any(_moves(group, i) for i in range(len(_CHOSEN)))]
+
+    def _guard(self, key: Key, case: str) -> tuple[Line, ...]:
+        """Guards learned in two shapes are not trusted: then the case counts always."""
+        known = self.guards[key, case]
+        return next(iter(known)) if len(known) == 1 else ()
+
+
+def _key(one: Judged) -> Key:
+    """What makes a margin one margin, whatever case it is in."""
+    m = one.margin
+    return (m.symbol, m.cycle, m.neighbour, m.sense, *one.events)
 
 
 def _line(ticks: TickTable, value_ps: int, per_tick: Mapping[str, int]) -> Line:
@@ -74,21 +85,25 @@ def _at(line: Line, at: tuple[int, ...]) -> int:
 
 
 def sorted_margins(found: Iterable[Judged]) -> tuple[int, ...]:
-    """Hard margins, worst first: what one plan is compared to another by."""
-    return tuple(sorted(max(one.margin.margin_ps, _HOPELESS) for one in found if one.margin.kind == "hard"))
+    """Hard margins, the worst case of each, worst first: what one plan is compared to another by."""
+    worst: dict[Key, int] = {}
+    for one in found:
+        if one.margin.kind == "hard":
+            key = _key(one)
+            worst[key] = min(one.margin.margin_ps, worst.get(key, _NEVER))
+    return tuple(sorted(max(value, _HOPELESS) for value in worst.values()))
 
 
 def _vector(groups: list[Group], at: tuple[int, ...]) -> list[int]:
     values: list[int] = []
-    for lines, guards, count in groups:
-        value = _NEVER
-        if not guards or not any(_at(guard, at) < 0 for guard in guards):
+    for cases, count in groups:
+        worst = _NEVER
+        for lines, guards in cases:
+            if guards and any(_at(guard, at) < 0 for guard in guards):
+                continue
             value = _at(lines[0], at) if len(lines) == 1 else max([_at(line, at) for line in lines])
-            value = max(value, _HOPELESS)
-        if count == 1:
-            values.append(value)
-        else:
-            values += [value] * count
+            worst = min(worst, value)
+        values += [max(worst, _HOPELESS)] * count
     values.sort()
     return values
 
@@ -262,8 +277,7 @@ def _given(given: GivenTicks, name: str) -> bool:
 
 
 def _moves(group: Group, i: int) -> bool:
-    lines, guards, _ = group
-    return any(index == i for line in (*lines, *guards) for index, _ in line[1])
+    return any(index == i for lines, guards in group[0] for line in (*lines, *guards) for index, _ in line[1])
 
 
 def _score(groups: list[Group], at: tuple[int, ...]) -> tuple[list[int], int]:
