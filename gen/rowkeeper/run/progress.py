@@ -61,14 +61,28 @@ class Progress:
                 self._write(f"{name}: still running after {spent:.0f} s")
 
     def _left(self) -> str:
-        total = sum(self._expected.values())
-        remaining = total - self._spent_expected
-        if not self._expected or remaining <= 0:
+        """Expected rest, stretched by the pace so far; a step that runs has used up part of what was expected of it."""
+        now = time.monotonic()
+        pace = self._pace(now)
+        rest = 0.0
+        for name, expected in self._expected.items():
+            if name in self._running:
+                rest += max(expected * pace - (now - self._running[name]), expected * 0.05)
+            elif name not in self._done:
+                rest += expected * pace
+        if rest <= 0:
             return ""
-        spent = time.monotonic() - self._began
-        pace = spent / self._spent_expected if self._spent_expected > 5 else 1.0
-        seconds = max(1, round(remaining * min(max(pace, 0.3), 4.0)))
+        seconds = max(1, round(rest))
         return f", about {seconds} s left" if seconds < 120 else f", about {round(seconds / 60)} min left"
+
+    def _pace(self, now: float) -> float:
+        """How much longer than expected the finished steps took, within reason."""
+        if self._spent_expected < 5:
+            return 1.0
+        return min(max((now - self._began - self._running_for(now)) / self._spent_expected, 0.3), 4.0)
+
+    def _running_for(self, now: float) -> float:
+        return max((now - began for began in self._running.values()), default=0.0)
 
     def _write(self, text: str) -> None:
         if self._stream is None:
