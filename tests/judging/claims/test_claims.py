@@ -18,6 +18,7 @@ from rowkeeper.judging.proof.equality import equal
 from rowkeeper.logic.emit import rtlil_text
 from rowkeeper.logic.invariants import probe_text
 from rowkeeper.logic.spoiled import variants
+from rowkeeper.reading import catalogue
 from rowkeeper.tools import run_tool
 
 NAMES = [claim.name for claim in claims(LOOM, bounds(LOOM))]
@@ -78,6 +79,13 @@ def test_assumptions_are_named(name: str) -> None:
         assert any(found.startswith(listed) for listed in claim.assumptions), found
     for listed in claim.assumptions:
         assert any(found.startswith(listed) for found in assumed), listed
+
+
+def test_assumptions_stand_in_the_bus_family() -> None:
+    """Each has its English sentence there, for the sheet."""
+    sentences = catalogue.bus("m1-refresh").assumptions
+    for claim in claims(LOOM, bounds(LOOM)):
+        assert set(claim.assumptions) <= set(sentences), claim.name
 
 
 def test_a_board_without_a_timer_has_no_legal_bound() -> None:
