@@ -172,6 +172,14 @@ def test_a_cover_out_of_reach_fails_the_claim(short_texts: Mapping[str, ShortTex
     assert (outcome.status, outcome.covered) == (Status.FAILED, False)
 
 
+def test_promises_that_leave_nothing_fail_the_claim() -> None:
+    """A bus without a request in its drought cannot be proved anything about."""
+    claim = replace(_claim("served"), bounds=replace(bounds(LOOM), drought_ticks=1))
+    outcome = prove(claim, probe_text(LOOM))
+    assert outcome.status is Status.FAILED
+    assert outcome.detail == "with these promises of the bus the situation it is about cannot come about"
+
+
 def test_a_text_that_is_no_logic_did_not_run() -> None:
     """No verdict without a proof."""
     outcome = prove(_claim("row-steps"), probe_text(LOOM).replace("process", "procession", 1))

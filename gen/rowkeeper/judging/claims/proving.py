@@ -4,7 +4,7 @@ Takes a Claim and RTLIL texts; gives a `contract.ClaimOutcome`. No verdict witho
 assertions are inductive together, or PDR's invariant is re-checked. Nothing that did not run counts as passed.
 """
 
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass, replace
 from typing import Literal
@@ -136,6 +136,9 @@ def _proof(outcome: ClaimOutcome, claim: Claim, probe_rtlil: str) -> ClaimOutcom
         text = f"{built.claim_assertions} assertions in the checker, {claim.assertions} announced"
         return replace(outcome, status=Status.FAILED, detail=text)
     graph = built.graph
+    if claim.assumptions and not _possible(graph, claim):
+        text = "with these promises of the bus the situation it is about cannot come about"
+        return replace(outcome, status=Status.FAILED, detail=text)
     if claim.checker.by_pdr:
         return _by_pdr(outcome, graph, claim)
     asserted, assumed = _asserted(graph), _assumed(graph)
@@ -203,18 +206,35 @@ def _search(graph: Aiger, name: str, ticks: int) -> _Trace | None:
     return None if answer.trace is None else _replayed(graph, answer.trace, name)
 
 
+def _starts(graph: Aiger, design: Design) -> Iterator[tuple[int, Aiger]]:
+    """The graph from the start, and from late states that a bus at rest leads to within the assumptions."""
+    yield 0, graph
+    for ticks in _late_ticks(design):
+        state = state_after(graph, idle_row(graph), ticks, _assumed(graph))
+        if state is not None:
+            yield ticks, from_state(graph, state)
+
+
 def _refute(graph: Aiger, claim: Claim) -> _Trace | None:
-    """A trace after the warm-up and from late ages: these lie too deep for a search from the start."""
-    idle = idle_row(graph)
-    for ticks in (0, *_late_ticks(claim.design)):
-        start = from_state(graph, state_after(graph, idle, ticks))
+    """A trace from the start, after the warm-up or from late ages: these lie too deep for a search from the start."""
+    for ticks, start in _starts(graph, claim.design):
         bads = [literal ^ 1 for literal in _claimed(start).values()]
         answer = search(start, bads, _assumed(start), _SEARCH_TICKS, _SEARCH_SECONDS // 4)
-        if answer.trace is not None:
-            trace = _replayed(start, answer.trace, claim.name, ticks)
-            if trace is not None:
-                return trace
+        trace = None if answer.trace is None else _replayed(start, answer.trace, claim.name, ticks)
+        if trace is not None:
+            return trace
     return None
+
+
+def _possible(graph: Aiger, claim: Claim) -> bool:
+    """Whether the cover is reached with the real ticks, so that the assumptions leave something to prove."""
+    for ticks, start in _starts(graph, claim.design):
+        if ticks == 0:
+            continue
+        answer = search(start, [start.output("cover_seen")], _assumed(start), _SEARCH_TICKS, _SEARCH_SECONDS // 4)
+        if answer.trace is not None and _reaches(start, answer.trace, "cover_seen"):
+            return True
+    return False
 
 
 def _late_ticks(design: Design) -> tuple[int, ...]:

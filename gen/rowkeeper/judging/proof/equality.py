@@ -144,7 +144,7 @@ def _differ(graph: Aiger, broken: list[str], where: str, late_ticks: Sequence[in
     """No pair is left to drop: look for a trace; without one the answer is open."""
     told = ", ".join(sorted(name.removeprefix("cmp_") for name in broken))
     for late in (0, *late_ticks):
-        start = from_state(graph, state_after(graph, idle_row(graph), late))
+        start = from_state(graph, state_after(graph, idle_row(graph), late) or [])
         compared = {name: literal for name, literal in start.named().items() if name.startswith("cmp_")}
         answer = search(start, [literal ^ 1 for literal in compared.values()], [], _SEARCH_TICKS, _SEARCH_SECONDS)
         if answer.trace is None:

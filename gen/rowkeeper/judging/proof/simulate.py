@@ -4,14 +4,12 @@ Takes a graph and input bits per tick; gives the values of its outputs and its s
 been replayed here. Must not know what is being claimed.
 """
 
-from collections.abc import Callable, Iterable, Iterator, Mapping
+from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
 from dataclasses import replace
 
 from rowkeeper.judging.proof.aiger import Aiger, cone
 
 __all__ = ["from_state", "idle_row", "replay", "state_after"]
-
-_CHUNK = 500
 
 
 def replay(graph: Aiger, trace: Iterable[str]) -> Iterator[Mapping[str, bool]]:
@@ -30,12 +28,14 @@ def idle_row(graph: Aiger) -> str:
     return "".join("1" if name.endswith("_n") and not name.startswith("late_") else "0" for name in names)
 
 
-def state_after(graph: Aiger, row: str, ticks: int) -> list[int]:
-    """The latches after so many ticks with the same inputs."""
-    step = _compiled(graph, ())
+def state_after(graph: Aiger, row: str, ticks: int, holding: Sequence[int] = ()) -> list[int] | None:
+    """The latches after so many ticks with the same inputs; None where one of `holding` fails on the way."""
+    step = _compiled(graph, tuple(holding))
     state, inputs = [0] * graph.latches, [int(bit) for bit in row]
     for _ in range(ticks):
-        state, _ = step(state, inputs)
+        state, held = step(state, inputs)
+        if not all(held):
+            return None
     return state
 
 
@@ -61,30 +61,20 @@ _Step = Callable[[list[int], list[int]], tuple[list[int], list[int]]]
 
 
 def _compiled(graph: Aiger, watched: tuple[int, ...]) -> _Step:
-    """One tick as Python functions over a list of values, in pieces that the compiler takes easily."""
+    """One tick as a Python function with a local variable per gate."""
     gates, _ = cone(graph, [*graph.nexts, *watched])
-    order = sorted(gates)
-    pieces = []
-    for at in range(0, len(order), _CHUNK):
-        lines = ["def piece(v):"]
-        for variable in order[at : at + _CHUNK]:
-            left, right = graph.gates[variable - graph.first_gate]
-            lines.append(f" v[{variable}] = {_term(left)} & {_term(right)}")
-        scope: dict[str, Callable[[list[int]], None]] = {}
-        exec("\n".join(lines), scope)  # text built from integers only
-        pieces.append(scope["piece"])
-    span = graph.first_gate + len(graph.gates)
-
-    def step(state: list[int], inputs: list[int]) -> tuple[list[int], list[int]]:
-        values = [0] * span
-        values[1 : graph.first_gate] = inputs + state
-        for piece in pieces:
-            piece(values)
-        following = [values[literal >> 1] ^ (literal & 1) for literal in graph.nexts]
-        return following, [values[literal >> 1] ^ (literal & 1) for literal in watched]
-
-    return step
+    given = [f"v{variable}" for variable in range(1, graph.first_gate)]
+    lines = ["def step(state, inputs):", " v0 = 0"]
+    if given:
+        lines.append(f" {', '.join(given)}, = [*inputs, *state]")
+    for variable in sorted(gates):
+        left, right = graph.gates[variable - graph.first_gate]
+        lines.append(f" v{variable} = {_term(left)} & {_term(right)}")
+    lines.append(f" return [{', '.join(map(_term, graph.nexts))}], [{', '.join(map(_term, watched))}]")
+    scope: dict[str, _Step] = {}
+    exec("\n".join(lines), scope)  # text built from integers only
+    return scope["step"]
 
 
 def _term(literal: int) -> str:
-    return f"(v[{literal >> 1}] ^ 1)" if literal & 1 else f"v[{literal >> 1}]"
+    return f"(v{literal >> 1} ^ 1)" if literal & 1 else f"v{literal >> 1}"
