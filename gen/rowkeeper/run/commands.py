@@ -14,7 +14,7 @@ from rowkeeper.run.output import UnknownNameError, write_all
 from rowkeeper.run.pipeline import EXPECTED_S, Work, benched, fitted, planned, proved, verdict
 from rowkeeper.run.progress import Progress
 from rowkeeper.sheets.facts import board_stamp
-from rowkeeper.sheets.outcome_tables import bench_text, claims_text, verdict_text
+from rowkeeper.sheets.outcome_tables import claims_text, verdict_text
 from rowkeeper.sheets.parts_tables import catalogue_text, figures_text
 from rowkeeper.sheets.plan_tables import plan_text
 from rowkeeper.sheets.tables import explain_text
@@ -56,8 +56,8 @@ def _judged(work: Work, found: Verdict, as_json: bool) -> Answer:
     if as_json:
         stamp = board_stamp(work.board, __version__)
         return Answer(verdict_json(stamp, found, work.plan, work.claims, work.bench, work.fit), found.exit_code)
-    parts = [_refused(work), claims_text(work.claims) if work.claims else "", bench_text(work.bench) if work.bench else ""]
-    return Answer("\n".join(part for part in (*parts, verdict_text(found)) if part), found.exit_code)
+    parts = [_refused(work), claims_text(work.claims) if work.claims else "", verdict_text(found)]
+    return Answer("\n".join(part for part in parts if part), found.exit_code)
 
 
 def _refused(work: Work) -> str:

@@ -33,10 +33,26 @@ def claims_text(outcomes: Sequence[ClaimOutcome]) -> str:
     """Every claim with its status and its sentence, then the guards against a proof that shows nothing."""
     if not outcomes:
         return "NOT RUN: no claim was put to the prover.\n"
-    rows = [(status_word(o.status), o.subject, o.claim, str(o.assertions), _guards(o), _sentence(o)) for o in outcomes]
+    lines: list[str] = []
+    for sentence, same in _by_sentence(outcomes).items():
+        lines += [line for outcome in same for line in paragraph(_claim_line(outcome), hanging="    ")]
+        lines += [*paragraph(sentence, "        "), ""]
     assumed = list(dict.fromkeys(name for outcome in outcomes for name in outcome.assumptions))
-    lines = table(("status", "subject", "claim", "asserts", "guards", "what is claimed"), rows, right=(3,))
-    return lines_text(lines, paragraph("Assumed of the bus: " + (", ".join(assumed) or "nothing"), hanging="    "))
+    return lines_text(lines[:-1], paragraph("Assumed of the bus: " + (", ".join(assumed) or "nothing"), hanging="    "))
+
+
+def _by_sentence(outcomes: Sequence[ClaimOutcome]) -> dict[str, list[ClaimOutcome]]:
+    """A claim on several subjects is one sentence."""
+    found: dict[str, list[ClaimOutcome]] = {}
+    for outcome in outcomes:
+        found.setdefault(outcome.sentence, []).append(outcome)
+    return found
+
+
+def _claim_line(outcome: ClaimOutcome) -> str:
+    parts = [f"{outcome.assertions} assertions", _guards(outcome), outcome.detail]
+    told = "; ".join(part for part in parts if part)
+    return f"{status_word(outcome.status)}  {outcome.claim} ({outcome.subject}): {told}"
 
 
 def _guards(outcome: ClaimOutcome) -> str:
@@ -46,10 +62,6 @@ def _guards(outcome: ClaimOutcome) -> str:
         if result is not None:
             parts.append(f"{name} {'ok' if result else 'MISSED'}")
     return ", ".join(parts) or "none"
-
-
-def _sentence(outcome: ClaimOutcome) -> str:
-    return f"{outcome.sentence} [{outcome.detail}]" if outcome.detail else outcome.sentence
 
 
 def bench_text(outcomes: Sequence[BenchOutcome]) -> str:
