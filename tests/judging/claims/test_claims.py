@@ -165,7 +165,7 @@ def test_a_cover_out_of_reach_fails_the_claim(short_texts: Mapping[str, ShortTex
     """A claim about nothing proves nothing."""
 
     class Nothing(RowSteps):
-        def cover(self, seen: object) -> None:
+        def cover(self, seen: object, allowed: object = None) -> None:
             super().cover(self.scene.row & ~self.scene.row)
 
     outcome = prove(replace(_claim("row-steps"), checker=Nothing), probe_text(LOOM), short_texts["loom"])

@@ -32,6 +32,7 @@ class Checker(ABC):
         self.lemmas: dict[str, Signal] = {}
         self.assumed: dict[str, Signal] = {}
         self.covered = Signal(name="cover_seen")
+        self.allowed = Signal(name="allowed_seen")
         self.check()
 
     @abstractmethod
@@ -50,9 +51,9 @@ class Checker(ABC):
         """What a bus promises; `name` begins with one of `assumptions`."""
         self._state(self.assumed, "assume", name, holds)
 
-    def cover(self, seen: Value) -> None:
-        """A situation that shows the claim is about something."""
-        self.m.d.comb += self.covered.eq(seen)
+    def cover(self, seen: Value, allowed: Value | None = None) -> None:
+        """A situation that shows the claim is about something; `allowed`: one that few ticks lead to, likewise."""
+        self.m.d.comb += [self.covered.eq(seen), self.allowed.eq(seen if allowed is None else allowed)]
 
     def _state(self, where: dict[str, Signal], kind: str, name: str, holds: Value | int) -> None:
         signal = Signal(name=f"{kind}_{name}")

@@ -90,7 +90,7 @@ class _Harness(Elaboratable):
         c = self.checker
         inputs = [self.clock.clk, *self.raw.values(), *self.late.values(), self.address]
         outputs = [*self.pins.values(), *self.sampled.values()]
-        return [*inputs, *outputs, *c.musts.values(), *c.lemmas.values(), *c.assumed.values(), c.covered]
+        return [*inputs, *outputs, *c.musts.values(), *c.lemmas.values(), *c.assumed.values(), c.covered, c.allowed]
 
     def elaborate(self, platform: object) -> Module:
         return self.module

@@ -52,4 +52,5 @@ class LegalBound(LegalBus):
         self.behave()
         self.must("not_forced", ~s.probe("ready") | (s.probe("age") < t.forced))
         self.must("gap", ~self.begun | (self.since < self.bounds.legal_gap_ticks))
-        self.cover(self.falls & (self.since_before > t.standby) & s.probe("ready"))
+        begins = self.asked.began & s.probe("ready") & ~s.probe("refresh")
+        self.cover(self.falls & (self.since_before > t.standby) & s.probe("ready"), begins)

@@ -227,12 +227,12 @@ def _refute(graph: Aiger, claim: Claim) -> _Trace | None:
 
 
 def _possible(graph: Aiger, claim: Claim) -> bool:
-    """Whether the cover is reached with the real ticks, so that the assumptions leave something to prove."""
+    """Whether the situation is reached with the real ticks, so that the assumptions leave something to prove."""
     for ticks, start in _starts(graph, claim.design):
         if ticks == 0:
             continue
-        answer = search(start, [start.output("cover_seen")], _assumed(start), _SEARCH_TICKS, _SEARCH_SECONDS // 4)
-        if answer.trace is not None and _reaches(start, answer.trace, "cover_seen"):
+        answer = search(start, [start.output("allowed_seen")], _assumed(start), _SEARCH_TICKS, _SEARCH_SECONDS // 4)
+        if answer.trace is not None and _reaches(start, answer.trace, "allowed_seen"):
             return True
     return False
 
