@@ -42,10 +42,17 @@ def _progress(quiet: bool) -> Progress:
 
 
 def _commands() -> ModuleType:
-    """The rooms behind the command line, loaded only when a command runs: help and refusals stay quick."""
+    """The rooms behind the quick commands, loaded only when one runs: help and refusals stay quick."""
     from rowkeeper.run import commands
 
     return commands
+
+
+def _line() -> ModuleType:
+    """The rooms behind the long commands: logic, solvers and tools are loaded for these alone."""
+    from rowkeeper.run import line
+
+    return line
 
 
 def _finish(answer: "Answer") -> NoReturn:
@@ -70,7 +77,7 @@ def _cli() -> None:
 @_QUIET
 def generate(board: Path, out: Path, as_json: bool, quiet: bool) -> None:
     """Everything: logic, margins, proofs, bench, fit and sheet, with a verdict at the end."""
-    _finish(_commands().generate(board, out, as_json, _progress(quiet)))
+    _finish(_line().generate(board, out, as_json, _progress(quiet)))
 
 
 @_cli.command()
@@ -91,7 +98,7 @@ def margins(board: Path, explain: str | None, routed: bool, as_json: bool, quiet
 @_QUIET
 def prove(board: Path, only_logic: bool, as_json: bool, quiet: bool) -> None:
     """Prove every claim, on the logic and on the routed netlist."""
-    _finish(_commands().prove(board, only_logic, as_json, _progress(quiet)))
+    _finish(_line().prove(board, only_logic, as_json, _progress(quiet)))
 
 
 @_cli.command()
@@ -106,7 +113,7 @@ def simulate(
     board: Path, netlist: bool, seed: int, no_icarus: bool, junit: Path | None, as_json: bool, quiet: bool
 ) -> None:
     """Run the bench: bus model at its worst against a memory that forgets."""
-    _finish(_commands().simulate(board, netlist, seed, not no_icarus, junit, as_json, _progress(quiet)))
+    _finish(_line().simulate(board, netlist, seed, not no_icarus, junit, as_json, _progress(quiet)))
 
 
 @_cli.command()
@@ -116,7 +123,7 @@ def simulate(
 @_QUIET
 def sheet(board: Path, out: Path, as_json: bool, quiet: bool) -> None:
     """Write the pin list and the assembly sheet only; the sheet says what was not run."""
-    _finish(_commands().sheet(board, out, as_json, _progress(quiet)))
+    _finish(_line().sheet(board, out, as_json, _progress(quiet)))
 
 
 @_cli.command()

@@ -1,27 +1,26 @@
-"""What each command does, from a path to an answer.
+"""What the quick commands do, from a path to an answer.
 
-Takes paths and options; gives an `Answer`: text for stdout and an exit code. Must not know any rule of the trade.
+Takes paths and options; gives an `Answer`: text for stdout and an exit code. Loads neither logic nor solvers: those
+are for the commands in `line`. Must not know any rule of the trade.
 """
 
 from dataclasses import dataclass
 from pathlib import Path
 
 from rowkeeper import __version__
-from rowkeeper.contract import Verdict
+from rowkeeper.contract import Plan
 from rowkeeper.reading import describe, read_board
-from rowkeeper.run.artefacts import artefacts, sheet_artefacts
-from rowkeeper.run.output import UnknownNameError, write_all
-from rowkeeper.run.pipeline import EXPECTED_S, Work, benched, fitted, planned, proved, verdict
-from rowkeeper.run.progress import Progress
+from rowkeeper.reading.board import Board
+from rowkeeper.run.output import UnknownNameError
+from rowkeeper.run.progress import EXPECTED_S, Progress
 from rowkeeper.sheets.facts import board_stamp
-from rowkeeper.sheets.outcome_tables import claims_text, verdict_text
 from rowkeeper.sheets.parts_tables import catalogue_text, figures_text
 from rowkeeper.sheets.plan_tables import plan_text
 from rowkeeper.sheets.tables import explain_text
-from rowkeeper.sheets.verdict import json_text, junit_xml, plain_value, plan_json, verdict_json
-from rowkeeper.timing.refusals import refusals
+from rowkeeper.sheets.verdict import json_text, plain_value, plan_json
+from rowkeeper.timing import default_delays, refusals, settle
 
-__all__ = ["Answer", "generate", "margins", "parts", "prove", "sheet", "simulate"]
+__all__ = ["Answer", "margins", "parts", "refused_text"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -32,96 +31,38 @@ class Answer:
     code: int
 
 
-def generate(board: Path, out: Path, as_json: bool, progress: Progress) -> Answer:
-    """The whole line. A plan that does not hold ends it: nothing is written then."""
-    progress.plan(EXPECTED_S)
-    work = planned(read_board(board), progress)
-    if work.plan.holds:
-        work = fitted(work, progress)
-    if not _worth_judging(work):
-        return _judged(work, verdict(work, ("fit",) if work.fit else ()), as_json)
-    work = proved(work, progress)
-    work = benched(work, progress, seed=1, subjects=work.subjects, icarus=True)
-    found = verdict(work, ("fit", "claim", "bench"))
-    write_all(out / work.board.slug, artefacts(work, found))
-    progress.say(f"written to {out / work.board.slug}")
-    return _judged(work, found, as_json)
-
-
-def _worth_judging(work: Work) -> bool:
-    return work.plan.holds and work.fit is not None and bool(work.fit.netlist_rtlil)
-
-
-def _judged(work: Work, found: Verdict, as_json: bool) -> Answer:
-    if as_json:
-        stamp = board_stamp(work.board, __version__)
-        return Answer(verdict_json(stamp, found, work.plan, work.claims, work.bench, work.fit), found.exit_code)
-    parts = [_refused(work), claims_text(work.claims) if work.claims else "", verdict_text(found)]
-    return Answer("\n".join(part for part in parts if part), found.exit_code)
-
-
-def _refused(work: Work) -> str:
-    return "".join(f"refused: {sentence}\n" for sentence in refusals(work.plan))
-
-
 def margins(board: Path, explain: str | None, routed: bool, as_json: bool, progress: Progress) -> Answer:
     """Every margin, worst first, or the terms of one limit."""
     progress.plan({name: EXPECTED_S[name] for name in ("plan", *(("fit",) if routed else ()))})
-    work = planned(read_board(board), progress)
-    if routed and work.plan.holds:
-        work = fitted(work, progress)
-    code = 0 if work.plan.holds else 1
+    typed = read_board(board)
+    plan = _routed_plan(typed, progress) if routed else _plan(typed, progress)
+    code = 0 if plan.holds else 1
     if as_json:
-        return Answer(plan_json(board_stamp(work.board, __version__), work.plan), code)
+        return Answer(plan_json(board_stamp(typed, __version__), plan), code)
     if explain is not None:
-        symbols = sorted({margin.symbol for margin in work.plan.margins})
+        symbols = sorted({margin.symbol for margin in plan.margins})
         if explain not in symbols:
             raise UnknownNameError(f"no limit {explain!r} in this plan; there are {', '.join(symbols)}")
-        return Answer(explain_text(work.plan.margins, explain), code)
-    return Answer(plan_text(work.plan) + ("\n" + _refused(work) if code else ""), code)
+        return Answer(explain_text(plan.margins, explain), code)
+    return Answer(plan_text(plan) + ("\n" + refused_text(plan) if code else ""), code)
 
 
-def prove(board: Path, only_logic: bool, as_json: bool, progress: Progress) -> Answer:
-    """Every claim, on the logic and on the routed netlist."""
-    steps = ("plan", "prove") if only_logic else ("plan", "fit", "prove")
-    progress.plan({name: EXPECTED_S[name] for name in steps})
-    work = planned(read_board(board), progress)
-    if not work.plan.holds:
-        return _judged(work, verdict(work, ()), as_json)
-    if not only_logic:
-        work = fitted(work, progress)
-    work = proved(work, progress)
-    return _judged(work, verdict(work, ("claim",) if only_logic else ("fit", "claim")), as_json)
+def _plan(board: Board, progress: Progress) -> Plan:
+    with progress.step("plan"):
+        return settle(board, default_delays(board))
 
 
-def simulate(
-    board: Path, netlist: bool, seed: int, icarus: bool, junit: Path | None, as_json: bool, progress: Progress
-) -> Answer:
-    """The bench, on the logic or on the routed netlist."""
-    progress.plan({name: EXPECTED_S[name] for name in (("plan", "fit", "bench") if netlist else ("plan", "bench"))})
-    work = planned(read_board(board), progress)
-    if not work.plan.holds:
-        return _judged(work, verdict(work, ()), as_json)
-    if netlist:
-        work = fitted(work, progress)
-    chosen = {name: text for name, text in work.subjects.items() if (name == "netlist") == netlist}
-    work = benched(work, progress, seed, chosen, icarus)
-    found = verdict(work, ("fit", "bench") if netlist else ("bench",))
-    if junit is not None:
-        junit.write_text(junit_xml(board_stamp(work.board, __version__), found), encoding="utf-8")
-    return _judged(work, found, as_json)
+def _routed_plan(board: Board, progress: Progress) -> Plan:
+    """Judged with the router's delays; the tools of the long commands are loaded for it."""
+    from rowkeeper.run.pipeline import fitted, planned
+
+    work = planned(board, progress)
+    return fitted(work, progress).plan if work.plan.holds else work.plan
 
 
-def sheet(board: Path, out: Path, as_json: bool, progress: Progress) -> Answer:
-    """Pin list and assembly sheet, with everything that was not run said on it."""
-    progress.plan({"plan": EXPECTED_S["plan"]})
-    work = planned(read_board(board), progress)
-    if not work.plan.holds:
-        return _judged(work, verdict(work, ()), as_json)
-    found = verdict(work, ("fit", "claim", "bench"))
-    write_all(out / work.board.slug, sheet_artefacts(work, found))
-    progress.say(f"written to {out / work.board.slug}; its verdict says what was not run")
-    return Answer(json_text([str(out / work.board.slug / name) for name in ("pins.csv", "sheet.html")]), 0)
+def refused_text(plan: Plan) -> str:
+    """What keeps a plan from holding, a line each."""
+    return "".join(f"refused: {sentence}\n" for sentence in refusals(plan))
 
 
 def parts(name: str | None, as_json: bool) -> Answer:

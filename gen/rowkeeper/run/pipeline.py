@@ -46,8 +46,6 @@ __all__ = ["Subject", "Work", "benched", "fitted", "planned", "proved", "verdict
 
 Subject = Literal["logic", "netlist"]
 _ROUNDS = 3
-# Seconds each step takes on two cores with warm caches: only the estimate of the time left rests on them.
-EXPECTED_S = {"plan": 3.0, "fit": 14.0, "prove": 60.0, "bench": 45.0}
 
 
 @dataclass(frozen=True, slots=True)
