@@ -3,6 +3,7 @@
 from pathlib import Path
 
 import pytest
+
 from rowkeeper import cli
 
 BOARDS = Path(__file__).parents[2] / "boards"
@@ -48,7 +49,7 @@ def test_design_that_cannot_work(
 
 
 def test_grant_without_notice(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
-    """Without BUSREQ a refresh of our own can run into the first access after a grant; the wire that mends it is named."""
+    """Without BUSREQ a refresh of our own can run into the access after a grant; the mending wire is named."""
     text = (BOARDS / "loom-16k.yaml").read_text(encoding="utf-8")
     line = next(line for line in text.splitlines() if "net: busreq_n" in line)
     code, out, _ = run(capsys, "generate", changed(tmp_path, line, ""), "--out", str(tmp_path / "out"), "--quiet")

@@ -3,6 +3,7 @@
 from pathlib import Path
 
 import pytest
+
 from rowkeeper.run.output import OutputRefused, write_all
 
 FILES = {"manifest.json": b"{}", "bench/run.sh": b"#!/bin/sh\n", "logic.v": b"module m; endmodule\n"}

@@ -10,6 +10,7 @@ from collections.abc import Callable
 from pathlib import Path
 
 import pytest
+
 from rowkeeper.judging.bench.compiled import build
 from rowkeeper.judging.bench.icarus import build_icarus
 from rowkeeper.judging.bench.scenario import scenarios

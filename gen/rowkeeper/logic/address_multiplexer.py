@@ -21,9 +21,7 @@ class AddressMultiplexer(Component):
     window: Signal
     memory_address: Signal
 
-    def __init__(
-        self, address_bits: int, window_bits: int, row_bits: int, column_bits: int, refresh_bits: int
-    ) -> None:
+    def __init__(self, address_bits: int, window_bits: int, row_bits: int, column_bits: int, refresh_bits: int) -> None:
         super().__init__(
             {
                 "bus_address": In(address_bits),

@@ -13,8 +13,9 @@ begun runs its counted length. The states, and the tick at which each is left (e
     REFRESH  row strobe low for `refresh_low`
 """
 
+from enum import IntEnum
+
 from amaranth.hdl import Module, Signal
-from amaranth.lib import enum
 from amaranth.lib.wiring import Component, In, Out
 
 from rowkeeper.contract import TickTable
@@ -22,7 +23,7 @@ from rowkeeper.contract import TickTable
 __all__ = ["Sequencer", "State"]
 
 
-class State(enum.Enum, shape=3):
+class State(IntEnum):
     """States of the sequencer."""
 
     IDLE = 0
