@@ -44,7 +44,7 @@ def test_the_files_are_plain_and_the_same_each_time() -> None:
     files = emit_bench(loom(), LOOM_DESIGN, loom_windows())
     assert dict(files) == dict(emit_bench(loom(), LOOM_DESIGN, loom_windows()))
     assert sorted(files) == [
-        "bench.v", "board.vh", "bus.vh", "checks.vh", "memory.vh", "parameters.vh", "program.vh", "run.sh",
+        "bench.v", "board.vh", "bus.vh", "checks.vh", "cycles.vh", "memory.vh", "parameters.vh", "program.vh", "run.sh",
     ]  # fmt: skip
     assert not any(b"{{" in content or b"/work" in content for content in files.values())
 

@@ -15,7 +15,7 @@ from rowkeeper.reading.figures import Window
 
 __all__ = ["emit_bench"]
 
-_PLAIN = ("checks.vh", "memory.vh", "board.vh", "bus.vh", "program.vh", "run.sh")
+_PLAIN = ("checks.vh", "memory.vh", "board.vh", "bus.vh", "cycles.vh", "program.vh", "run.sh")
 # What is run again at the ends of every window: short, and it holds every kind of cycle.
 _AT_THE_ENDS = ("mix",)
 
