@@ -18,17 +18,25 @@ __all__ = [
     "Constraint",
     "Delays",
     "Design",
+    "Drive",
     "Finding",
     "FindingGroup",
     "FitOutcome",
+    "LevelMargin",
+    "Levels",
     "Margin",
     "NetDelay",
     "Note",
+    "OriginalDelay",
+    "OriginalLimit",
+    "OriginalReport",
+    "OriginalStage",
     "PinRow",
     "Plan",
     "PortBit",
     "Ports",
     "RefreshBounds",
+    "Settling",
     "Status",
     "Term",
     "TickTable",
@@ -257,6 +265,153 @@ class Plan:
         return sums and hard and self.refresh.any_age_ps <= self.refresh.interval_ps
 
 
+@dataclass(frozen=True, slots=True)
+class LevelMargin:
+    """One wire between a driver and a receiver, at the worst supply of each; millivolts throughout.
+
+    A margin is None where one of the two sheets gives no figure: `note` says so. `highest_mv` is the most that the
+    driver can put on the pin, `limit_mv` what the pin stands. `mend`: what would mend it, empty where all is well.
+    """
+
+    net: str
+    driver: str
+    receiver: str
+    pin_class: str
+    voh_mv: int | None
+    vih_mv: int | None
+    vol_mv: int | None
+    vil_mv: int | None
+    high_margin_mv: int | None
+    low_margin_mv: int | None
+    highest_mv: int | None
+    limit_mv: int | None
+    driver_source: Source
+    receiver_source: Source
+    from_memory: bool
+    direction: str = ""
+    mend: str = ""
+    note: str = ""
+
+    @property
+    def over_mv(self) -> int:
+        """By how much the highest voltage is above what the pin stands; 0 where it is not, or not known."""
+        if self.highest_mv is None or self.limit_mv is None:
+            return 0
+        return max(0, self.highest_mv - self.limit_mv)
+
+    @property
+    def holds(self) -> bool:
+        """No known margin is below zero and no pin is driven beyond its absolute maximum."""
+        known = [m for m in (self.high_margin_mv, self.low_margin_mv) if m is not None]
+        return all(m >= 0 for m in known) and self.over_mv == 0
+
+
+@dataclass(frozen=True, slots=True)
+class Drive:
+    """What an output of the replacement has to drive: inputs, load, swing, and the current in its edges.
+
+    `edge_ua`: at most, limited by the series resistor alone, for this net; None without one. `series_lo_milliohm` to
+    `series_hi_milliohm`: values to try with a scope, never a result.
+    """
+
+    net: str
+    inputs: int
+    load_ff: int
+    swing_mv: int
+    series_milliohm: int
+    edge_ua: int | None
+    together: int
+    series_lo_milliohm: int
+    series_hi_milliohm: int
+    note: str
+    source: Source
+
+
+@dataclass(frozen=True, slots=True)
+class Settling:
+    """One estimate of how often a first flip-flop is still undecided when the second one looks.
+
+    MTBF = exp(C2 x dt) / (fclk x fdata x C1). `years` is rounded for people. `borrowed`: the constants belong to
+    another family than the device's, so that the figure shows a scale and decides nothing.
+    """
+
+    constants: str
+    source: Source
+    c1_fs: int
+    c2_per_us: int
+    clock_hz: int
+    data_hz: int
+    resolve_ps: int
+    years: str
+    borrowed: bool
+
+
+@dataclass(frozen=True, slots=True)
+class Levels:
+    """Everything electrical of one board: wires, drives, and the synchronisers."""
+
+    wires: tuple[LevelMargin, ...]
+    drives: tuple[Drive, ...]
+    settling: tuple[Settling, ...]
+
+    @property
+    def holds(self) -> bool:
+        return all(wire.holds for wire in self.wires)
+
+
+@dataclass(frozen=True, slots=True)
+class OriginalStage:
+    """One step of a delay network's window: what is counted so far. `latest_ps` None: it may never switch."""
+
+    name: str
+    earliest_ps: int | None
+    latest_ps: int | None
+
+
+@dataclass(frozen=True, slots=True)
+class OriginalDelay:
+    """The guaranteed window of one delay network for one edge. `never`: the corner in which it never switches."""
+
+    name: str
+    edge: Literal["rising", "falling"]
+    network: str
+    stages: tuple[OriginalStage, ...]
+    earliest_ps: int | None
+    latest_ps: int | None
+    nominal_ps: int | None
+    never: str
+    remarks: tuple[str, ...]
+    sources: tuple[Source, ...]
+    from_memory: bool
+
+
+@dataclass(frozen=True, slots=True)
+class OriginalLimit:
+    """One limit, met by what stands on the board now and by the replacement. None: no bound, or none known."""
+
+    symbol: str
+    what: str
+    sense: Literal["min", "max"]
+    kind: Literal["hard", "reference"]
+    required_ps: int
+    original_earliest_ps: int | None
+    original_latest_ps: int | None
+    original_margin_ps: int | None
+    replacement_earliest_ps: int | None
+    replacement_latest_ps: int | None
+    replacement_margin_ps: int | None
+    source: Source
+    note: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class OriginalReport:
+    """What the worn board was relying on, beside what the replacement keeps."""
+
+    delays: tuple[OriginalDelay, ...]
+    limits: tuple[OriginalLimit, ...]
+
+
 # --- what the judges give ----------------------------------------------------------------------------------------
 
 
@@ -337,7 +492,7 @@ class PinRow:
 # --- what it all comes to ----------------------------------------------------------------------------------------
 
 
-FindingGroup = Literal["margin", "arbitration", "refresh", "claim", "bench", "fit"]
+FindingGroup = Literal["margin", "level", "arbitration", "refresh", "claim", "bench", "fit"]
 
 
 @dataclass(frozen=True, slots=True)

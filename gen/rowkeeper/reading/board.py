@@ -26,9 +26,13 @@ __all__ = [
     "DevicePin",
     "GivenTicks",
     "IoLevels",
+    "LogicFamily",
+    "LogicLevel",
     "Net",
+    "Original",
     "Part",
     "PathElement",
+    "RcDelay",
     "Wiring",
 ]
 
@@ -218,6 +222,55 @@ class Part:
     load_source: Source = _UNSOURCED
 
 
+@dataclass(frozen=True, slots=True)
+class LogicLevel:
+    """A voltage, as millivolts plus a share of the supply: one of the two is zero."""
+
+    millivolts: int = 0
+    of_supply: Fraction = Fraction(0)
+
+    def at(self, supply_mv: int) -> Fraction:
+        """Exact millivolts at this supply."""
+        return self.millivolts + self.of_supply * supply_mv
+
+
+@dataclass(frozen=True, slots=True)
+class LogicFamily:
+    """A logic family as a resistor and a capacitor meet it: what it drives, and where its inputs switch.
+
+    Each pair is a lower and an upper end. `rising`: where an input on its way up is taken for high; `falling`: on its
+    way down for low. `high`, `low`: what an output drives, behind `high_milliohm`, `low_milliohm`. An input that is
+    low sources up to `input_low_ua`; one that is high sinks up to `input_high_ua`. `nominal` is threshold, high and
+    low of a usual part: shown, never judged. `slowest_edge_ps_per_v`: None where the sheet sets no limit.
+    """
+
+    name: str
+    title: str
+    supply_min_mv: int
+    supply_max_mv: int
+    rising: tuple[LogicLevel, LogicLevel]
+    falling: tuple[LogicLevel, LogicLevel]
+    high: tuple[LogicLevel, LogicLevel]
+    low: tuple[LogicLevel, LogicLevel]
+    high_milliohm: tuple[int, int]
+    low_milliohm: tuple[int, int]
+    input_low_ua: int
+    input_high_ua: int
+    slowest_edge_ps_per_v: int | None
+    schmitt: bool
+    nominal: tuple[LogicLevel, LogicLevel, LogicLevel] | None
+    threshold_source: Source
+    output_source: Source
+    resistance_source: Source
+    current_source: Source
+    notes: tuple[str, ...] = ()
+
+    @property
+    def sources(self) -> tuple[Source, ...]:
+        """Every source a delay through this family can rest on."""
+        return self.threshold_source, self.output_source, self.resistance_source, self.current_source
+
+
 # --- board file --------------------------------------------------------------------------------------------------
 
 
@@ -320,6 +373,37 @@ class Wiring:
 
 
 @dataclass(frozen=True, slots=True)
+class RcDelay:
+    """A delay made by a resistor into a capacitor, as it stands on the board now. Tolerances are shares of one.
+
+    `edge`: which way the signal at the receiving input moves when the delay counts. `gate_*`: gates behind it.
+    """
+
+    name: Literal["row_to_select", "select_to_column"]
+    resistance_milliohm: int
+    resistance_tolerance: Fraction
+    capacitance_ff: int
+    capacitance_tolerance: Fraction
+    input: LogicFamily
+    driver: LogicFamily
+    edge: Literal["rising", "falling", "both"] = "both"
+    gate_lo_ps: int = 0
+    gate_hi_ps: int = 0
+    at: Position = NOWHERE
+
+
+@dataclass(frozen=True, slots=True)
+class Original:
+    """What stands on the board now, to compare with. `multiplexer_*`: from select to the address at the chips."""
+
+    row_to_select: RcDelay
+    select_to_column: RcDelay
+    multiplexer_lo_ps: int = 0
+    multiplexer_hi_ps: int | None = None
+    at: Position = NOWHERE
+
+
+@dataclass(frozen=True, slots=True)
 class Board:
     """One board file, typed. `digest`: SHA-256 of the file's bytes together with every catalogue text it used.
 
@@ -345,3 +429,4 @@ class Board:
     digest: str
     places: Mapping[str, Position]
     overrides: tuple[str, ...] = ()
+    original: Original | None = None

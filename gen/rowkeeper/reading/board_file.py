@@ -11,6 +11,7 @@ from rowkeeper.reading.board import Bank, Board, BusFamily, Device, Net, Wiring
 from rowkeeper.reading.catalogue import Catalogue
 from rowkeeper.reading.levels import check_levels
 from rowkeeper.reading.names import check_slug
+from rowkeeper.reading.original import read_original
 from rowkeeper.reading.problems import Problems
 from rowkeeper.reading.section import Section
 from rowkeeper.reading.sensible import (
@@ -44,6 +45,7 @@ from rowkeeper.reading.wiring import all_nets, read_wiring
 __all__ = ["read_board", "read_board_text"]
 
 _SECTIONS = ("board", "bus", "memory", "refresh", "device", "strobes", "wiring", "parts")
+_OPTIONAL_SECTIONS = ("original",)
 _WIDEST_MEMORY_BITS = 8  # what the nets of a board may name when its chip is not known
 _OPTIONAL_LINES = ("busreq_n", "busack_n", "reset_n")
 
@@ -85,7 +87,7 @@ class _Reader:
         self._slug = slug
         self._catalogue = catalogue
         self._problems = problems
-        self._sections = Section(root, "a board file", problems, _SECTIONS)
+        self._sections = Section(root, "a board file", problems, _SECTIONS, _OPTIONAL_SECTIONS)
 
     def _heading(self) -> Heading | None:
         node = self._sections.node("board")
@@ -109,6 +111,8 @@ class _Reader:
         strobes = read_strobes(strobes_node or _absent(sections), problems)
         family = None if bus is None else bus.family
         wiring = self._wiring(family, banks)
+        original_node = sections.node("original")
+        original = None if original_node is None else read_original(original_node, self._catalogue, problems)
         if bus is not None and refresh is not None:
             self._check(bus, banks, refresh, device, wiring)
         problems.stop_if_any()
@@ -137,6 +141,7 @@ class _Reader:
             digest=self._digest(data),
             places=dict(places_of(self._root)),
             overrides=self._catalogue.overrides(),
+            original=original,
         )
 
     def _wiring(self, family: BusFamily | None, banks: tuple[Bank, ...]) -> Wiring:

@@ -12,21 +12,37 @@ from pathlib import Path
 from types import MappingProxyType
 from typing import Literal, TypeAlias, TypeVar, get_args
 
-from rowkeeper.reading.board import BusFamily, Chip, Device, Part
+from rowkeeper.reading.board import BusFamily, Chip, Device, LogicFamily, Part
 from rowkeeper.reading.catalogue_entries import Entry, read_bus, read_chips, read_device, read_parts
+from rowkeeper.reading.logic_family import read_families
 from rowkeeper.reading.problems import Problems
 from rowkeeper.reading.text_file import file_bytes, safe_text
 from rowkeeper.reading.tree import Block, Node, Scalar, read_tree
 
-__all__ = ["KINDS", "Catalogue", "Kind", "bus", "buses", "chip", "chips", "device", "devices", "part", "parts"]
+__all__ = [
+    "KINDS",
+    "Catalogue",
+    "Kind",
+    "bus",
+    "buses",
+    "chip",
+    "chips",
+    "device",
+    "devices",
+    "families",
+    "family",
+    "part",
+    "parts",
+]
 
-Kind: TypeAlias = Literal["chips", "buses", "devices", "parts"]
+Kind: TypeAlias = Literal["chips", "buses", "devices", "parts", "families"]
 KINDS: tuple[Kind, ...] = get_args(Kind)
 _READERS: Mapping[Kind, tuple[str, Callable[[Node, Problems], tuple[Entry, ...]]]] = {
     "chips": ("chip", read_chips),
     "buses": ("bus", read_bus),
     "devices": ("device", read_device),
     "parts": ("part", read_parts),
+    "families": ("family", read_families),
 }
 T = TypeVar("T")
 
@@ -129,6 +145,10 @@ class Catalogue:
         """A buffer or translator, or None."""
         return self._get("parts", name, Part)
 
+    def family(self, name: str) -> LogicFamily | None:
+        """A logic family, or None."""
+        return self._get("families", name, LogicFamily)
+
     def used(self) -> tuple[tuple[str, bytes], ...]:
         """Label and bytes of every file used so far, sorted by label."""
         return tuple(sorted(self._used.items()))
@@ -162,6 +182,16 @@ def devices() -> tuple[str, ...]:
 def parts() -> tuple[str, ...]:
     """Names of the shipped buffers and translators."""
     return tuple(sorted(_shipped("parts")))
+
+
+def families() -> tuple[str, ...]:
+    """Names of the shipped logic families."""
+    return tuple(sorted(_shipped("families")))
+
+
+def family(name: str) -> LogicFamily:
+    """A shipped logic family; KeyError if there is none."""
+    return _shipped_entry("families", name, LogicFamily)
 
 
 def chip(name: str) -> Chip:

@@ -6,7 +6,7 @@ the file came from, nor who asks.
 
 from typing import Literal, TypeAlias, cast
 
-from rowkeeper.reading.board import BusFamily, BusGrade, BusTraffic, Chip, Device, DevicePin, Part
+from rowkeeper.reading.board import BusFamily, BusGrade, BusTraffic, Chip, Device, DevicePin, LogicFamily, Part
 from rowkeeper.reading.figure_table import Columns, read_figures, read_formulas, read_levels, read_source, read_sources
 from rowkeeper.reading.figures import Figure, Mark, Source
 from rowkeeper.reading.problems import Problems
@@ -16,7 +16,7 @@ from rowkeeper.reading.units import capacitance_ff, count, plain_text, time_ps, 
 
 __all__ = ["Entry", "read_bus", "read_chips", "read_device", "read_parts"]
 
-Entry: TypeAlias = Chip | BusFamily | Device | Part
+Entry: TypeAlias = Chip | BusFamily | Device | Part | LogicFamily
 
 _ROLES = ("io", "clock", "supply", "ground", "config", "none")
 _PIN_ROLE: TypeAlias = Literal["io", "clock", "supply", "ground", "config", "none"]

@@ -7,7 +7,7 @@ from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 
 from rowkeeper.reading import catalogue
-from rowkeeper.reading.board import BusFamily, BusFormula, Chip, Device, Part
+from rowkeeper.reading.board import BusFamily, BusFormula, Chip, Device, LogicFamily, LogicLevel, Part
 from rowkeeper.reading.catalogue import KINDS, Kind
 from rowkeeper.reading.figures import Figure, Source
 
@@ -105,6 +105,27 @@ def _part_rows(part: Part) -> Iterator[FigureRow]:
             yield _figure(figure)
 
 
+def _level(level: LogicLevel) -> str:
+    if level.of_supply:
+        return f"{_number(int(level.of_supply * 1000), 10)} %"
+    return f"{_number(level.millivolts, 1000)} V"
+
+
+def _family_rows(family: LogicFamily) -> Iterator[FigureRow]:
+    pairs = (
+        ("input rising", family.rising, family.threshold_source),
+        ("input falling", family.falling, family.threshold_source),
+        ("output high", family.high, family.output_source),
+        ("output low", family.low, family.output_source),
+    )
+    for symbol, (low, high), source in pairs:
+        yield _row(symbol, "", _level(low), _level(high), "", source, "shares are of the supply")
+    for symbol, (least, most) in (("output high", family.high_milliohm), ("output low", family.low_milliohm)):
+        yield _row(symbol, "", _number(least, 1000), _number(most, 1000), "ohm", family.resistance_source)
+    for symbol, current in (("input low sources", family.input_low_ua), ("input high sinks", family.input_high_ua)):
+        yield _row(symbol, "", "", str(current), "uA", family.current_source)
+
+
 def all_names() -> Mapping[str, Kind]:
     """Every name of the shipped catalogue, with its kind."""
     lists = {
@@ -112,6 +133,7 @@ def all_names() -> Mapping[str, Kind]:
         "buses": catalogue.buses(),
         "devices": catalogue.devices(),
         "parts": catalogue.parts(),
+        "families": catalogue.families(),
     }
     return {name: kind for kind in KINDS for name in lists[kind]}
 
@@ -126,6 +148,9 @@ def _catalog_row(kind: Kind, name: str) -> CatalogRow:
     if kind == "devices":
         device = catalogue.device(name)
         return CatalogRow(name, device.title, f"{device.cells} cells, {device.package_pins} pins")
+    if kind == "families":
+        family = catalogue.family(name)
+        return CatalogRow(name, family.title, "logic family" + (", Schmitt inputs" if family.schmitt else ""))
     part = catalogue.part(name)
     return CatalogRow(name, part.title, f"{part.kind}, {part.channels} channels")
 
@@ -144,4 +169,6 @@ def figure_rows(name: str) -> tuple[FigureRow, ...]:
         return tuple(_bus_rows(catalogue.bus(name)))
     if kind == "devices":
         return tuple(_device_rows(catalogue.device(name)))
+    if kind == "families":
+        return tuple(_family_rows(catalogue.family(name)))
     return tuple(_part_rows(catalogue.part(name)))

@@ -16,6 +16,7 @@ from rowkeeper.reading.tree import Scalar
 
 __all__ = [
     "CAPACITANCE",
+    "CURRENT",
     "FREQUENCY",
     "PARTS_PER_MILLION",
     "RESISTANCE",
@@ -27,6 +28,7 @@ __all__ = [
     "address",
     "capacitance_ff",
     "count",
+    "current_ua",
     "exact",
     "frequency_hz",
     "parts_per_million",
@@ -67,6 +69,7 @@ PARTS_PER_MILLION = Dimension("tolerance", {"ppm": Fraction(1)}, "ppm", "100 ppm
 VOLTAGE = Dimension("voltage", {"mV": Fraction(1), "V": Fraction(1000)}, "millivolts", "3.3 V")
 CAPACITANCE = Dimension("capacitance", {"pF": Fraction(1000)}, "femtofarads", "80 pF")
 RESISTANCE = Dimension("resistance", {"ohm": Fraction(1000), "kohm": Fraction(10**6)}, "milliohms", "33 ohm")
+CURRENT = Dimension("current", {"uA": Fraction(1), "mA": Fraction(1000)}, "microamperes", "0.4 mA")
 SIZE = Dimension("size", {"bytes": Fraction(1), "KiB": Fraction(1024), "MiB": Fraction(1024**2)}, "bytes", "16 KiB")
 
 _QUANTITY = re.compile(r"([+-]?[0-9]{1,12}(?:\.[0-9]{1,12})?) ?([^0-9\s.+-]\S{0,15})?", re.ASCII)
@@ -184,6 +187,11 @@ def capacitance_ff(scalar: Scalar, problems: Problems) -> int:
 def resistance_milliohm(scalar: Scalar, problems: Problems) -> int:
     """A resistance in milliohms."""
     return whole(scalar, RESISTANCE, problems)
+
+
+def current_ua(scalar: Scalar, problems: Problems) -> int:
+    """A current in microamperes."""
+    return whole(scalar, CURRENT, problems)
 
 
 def size_bytes(scalar: Scalar, problems: Problems) -> int:
