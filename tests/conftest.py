@@ -4,6 +4,11 @@ import gc
 from collections.abc import Iterator
 
 import pytest
+from hypothesis import settings
+
+# A busy machine is no failure; and the same examples in every run.
+settings.register_profile("rowkeeper", deadline=None, derandomize=True)
+settings.load_profile("rowkeeper")
 
 
 def pytest_addoption(parser: pytest.Parser) -> None:

@@ -11,7 +11,6 @@ from fractions import Fraction
 from rowkeeper.contract import RefreshBounds, Term, TickTable
 from rowkeeper.reading.figures import Source
 from rowkeeper.timing.device import SYNCHRONISER, Facts
-from rowkeeper.timing.margins import Judged, spare
 from rowkeeper.timing.scenes import chips_of
 
 __all__ = [
@@ -26,7 +25,6 @@ __all__ = [
 ]
 
 _GUARD = 4  # ticks kept free below the chip's interval
-_WEIGHT = 1000
 _SLACK = 4  # ticks by which the longest legal gap ends before a refresh is forced
 
 
@@ -140,21 +138,9 @@ def _least_standby(ticks: TickTable) -> int:
     return ticks.row_setup + ticks.refresh_low + ticks.precharge + SYNCHRONISER + 1
 
 
-# How `TickTable.service`, `TickTable.legal_gap` and the least standby together grow with each tick.
-_GROWTH = {"column": 1, "row_hold": 2, "write_lead": 1, "precharge": 3, "row_setup": 3, "refresh_low": 1}
-
-
-def spare_by_service(facts: Facts) -> list[Judged]:
-    """Time by which `standby` is longer than it must be, once forced refresh, service and drought have had theirs.
-
-    Any is enough: it counts so heavily that it comes last when there is some, and first when it is missing.
-    """
-    if facts.board.standby != "own-timer":
-        return []
-    tick = facts.tick_hi_ps * _WEIGHT
-    margin = timer_ticks(facts).spare_ticks * tick
-    per_tick = {name: -tick * growth for name, growth in _GROWTH.items()}
-    return [spare("standby", "refresh timer", margin, per_tick, facts.tick_source)]
+def spare_by_service(facts: Facts) -> int:
+    """Ticks by which `standby` is longer than it must be, once forced refresh, service and drought have had theirs."""
+    return timer_ticks(facts).spare_ticks if facts.board.standby == "own-timer" else 0
 
 
 def timer_ticks(facts: Facts) -> TimerTicks:

@@ -143,11 +143,15 @@ def _later(
         second = network.copy()
         second.promise(other, event, SAME)
         second.promise(one, other, tick)
-        yield _case(scene, second, words[1], ahead)
+        yield _case(scene, second, words[1], ahead and _less(ahead, tick.lo_ps or 0))
 
 
 def _negative(bound: Bound) -> Bound:
     return Bound(-bound.total_ps, (), {name: -ps for name, ps in bound.per_tick.items()})
+
+
+def _less(bound: Bound, ps: int) -> Bound:
+    return Bound(bound.total_ps - ps, (), bound.per_tick)
 
 
 def _case(scene: Scene, network: Network, words: str, condition: Bound | None) -> Scene:

@@ -7,7 +7,7 @@ learns new lines, and stops when the pick has been judged. A kept line is never 
 promised that the judge does not confirm. Must not know the board file.
 """
 
-from collections.abc import Iterable, Mapping
+from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass, field, replace
 
 from rowkeeper.contract import TickTable
@@ -27,12 +27,15 @@ _LEAST = {"mux": 1, "column": 2, "row_hold": 2, "row_setup": 1, "write_lead": 1,
 _LEAST |= {"refresh_low": 2, "precharge": 3}
 _HOPELESS = -250_000  # ticks cannot mend what misses by more: all such margins count alike
 _NEVER = 10**15  # a case that cannot happen has time without end
+_TRADES = ((1, -1), (1, -2), (2, -1), (1, 1), (-1, -1))
+_SINGLES = ((1, 0), (-1, 0), (2, 0), (-2, 0))
 _PATIENCE_CLOCKS = 1  # bus clocks to spare before an access is given up or a column strobe ended
 
 Line = tuple[int, tuple[tuple[int, int], ...]]  # constant, and picoseconds per tick of each of _CHOSEN that counts
 Case = tuple[tuple[Line, ...], tuple[Line, ...]]  # the margin's lines, and what must not be negative for it to happen
 Group = tuple[tuple[Case, ...], int]  # the cases of a margin, and how many margins move so
 Key = tuple[str, ...]
+Worth = tuple[int, list[int], int]
 
 
 @dataclass(slots=True)
@@ -40,7 +43,7 @@ class _Lines:
     """Lines met so far of each hard margin, case by case, and the guards of each case."""
 
     margins: dict[Key, dict[str, set[Line]]] = field(default_factory=dict)
-    guards: dict[tuple[Key, str], set[tuple[Line, ...]]] = field(default_factory=dict)
+    guards: dict[tuple[Key, str], set[Line]] = field(default_factory=dict)
 
     def learn(self, ticks: TickTable, found: Iterable[Judged]) -> None:
         for one in found:
@@ -49,21 +52,28 @@ class _Lines:
             key = _key(one)
             line = _line(ticks, one.margin.margin_ps, one.per_tick)
             self.margins.setdefault(key, {}).setdefault(one.case, set()).add(line)
-            guards = tuple(_line(ticks, c.total_ps, c.per_tick) for c in one.conditions)
-            self.guards.setdefault((key, one.case), set()).add(guards)
+            guards = self.guards.setdefault((key, one.case), set())
+            guards.update(_line(ticks, c.total_ps, c.per_tick) for c in one.conditions)
 
     def grouped(self) -> list[Group]:
-        """Margins that move alike are worked out once; those that no tick moves are left out."""
+        """Margins that move alike are worked out once; those that no tick moves are left out.
+
+        A guard's line is never below the true guard, so any of them that is negative rules the case out.
+        """
         groups: dict[tuple[Case, ...], int] = {}
         for key, cases in self.margins.items():
-            group = tuple(sorted({(tuple(sorted(lines)), self._guard(key, case)) for case, lines in cases.items()}))
+            each = {(_apart(lines, max), _apart(self.guards[key, case], min)) for case, lines in cases.items()}
+            group = tuple(sorted(each))
             groups[group] = groups.get(group, 0) + 1
         return [group for group in groups.items() if any(_moves(group, i) for i in range(len(_CHOSEN)))]
 
-    def _guard(self, key: Key, case: str) -> tuple[Line, ...]:
-        """Guards learned in two shapes are not trusted: then the case counts always."""
-        known = self.guards[key, case]
-        return next(iter(known)) if len(known) == 1 else ()
+
+def _apart(lines: Iterable[Line], which: Callable[[int, int], int]) -> tuple[Line, ...]:
+    """Of lines that run side by side only the one that counts."""
+    kept: dict[tuple[tuple[int, int], ...], int] = {}
+    for constant, slopes in lines:
+        kept[slopes] = which(kept[slopes], constant) if slopes in kept else constant
+    return tuple(sorted((constant, slopes) for slopes, constant in kept.items()))
 
 
 def _key(one: Judged) -> Key:
@@ -94,18 +104,50 @@ def sorted_margins(found: Iterable[Judged]) -> tuple[int, ...]:
     return tuple(sorted(max(value, _HOPELESS) for value in worst.values()))
 
 
-def _vector(groups: list[Group], at: tuple[int, ...]) -> list[int]:
-    values: list[int] = []
-    for cases, count in groups:
-        worst = _NEVER
-        for lines, guards in cases:
-            if guards and any(_at(guard, at) < 0 for guard in guards):
-                continue
-            value = _at(lines[0], at) if len(lines) == 1 else max([_at(line, at) for line in lines])
-            worst = min(worst, value)
-        values += [max(worst, _HOPELESS)] * count
-    values.sort()
-    return values
+def _value(group: Group, at: tuple[int, ...]) -> int:
+    """The worst case of a margin."""
+    worst = _NEVER
+    for lines, guards in group[0]:
+        value = _at(lines[0], at) if len(lines) == 1 else max([_at(line, at) for line in lines])
+        if value < worst and all([_at(guard, at) >= 0 for guard in guards]):  # noqa: C419  # a list is quicker here
+            worst = value
+    return max(worst, _HOPELESS)
+
+
+@dataclass(slots=True)
+class _Goal:
+    """What a table is worth by the lines met so far: room for the timer, the sorted margins, then fewer ticks."""
+
+    groups: list[Group]
+    room: Callable[[tuple[int, ...]], int]
+
+    def worth(self, at: tuple[int, ...]) -> Worth:
+        values: list[int] = []
+        for group in self.groups:
+            values += [_value(group, at)] * group[1]
+        return self.room(at), sorted(values), -sum(at)
+
+    def beats(self, at: tuple[int, ...], best: Worth) -> Worth | None:
+        """The worth of `at` where it is more than `best`; a margin below the worst of `best` ends it early."""
+        room = self.room(at)
+        if room < best[0]:
+            return None
+        least = best[1][0] if best[1] and room == best[0] else -_NEVER
+        values: list[int] = []
+        for place, group in enumerate(self.groups):
+            value = _value(group, at)
+            if value < least:
+                if place:  # it is likely to end the next comparison as well
+                    self.groups.insert(0, self.groups.pop(place))
+                return None
+            values += [value] * group[1]
+        values.sort()
+        worth = room, values, -sum(at)
+        return worth if worth > best else None
+
+    def about(self, i: int) -> "_Goal":
+        """Margins that a tick does not move are the same on both sides of a comparison and fall out of it."""
+        return _Goal([group for group in self.groups if _moves(group, i)], self.room)
 
 
 # --- the first guess ---------------------------------------------------------------------------------------------
@@ -163,22 +205,36 @@ def best_ticks(facts: Facts, given: GivenTicks) -> TickTable:
     ticks = first_guess(facts, given)
     lines = _Lines()
     # What even the shortest ticks cannot keep is refused; it does not take time away from the limits that can be kept.
-    kept = {one.events for one in _spares(with_ticks(facts, ticks)) if one.margin.margin_ps >= 0}
-    met: dict[TickTable, tuple[tuple[int, ...], int]] = {}
+    kept = {one.events for one in spare_by_notice(with_ticks(facts, ticks)) if one.margin.margin_ps >= 0}
+    room = _room(facts, ticks)
+    met: dict[TickTable, tuple[int, tuple[int, ...], int]] = {}
     for _ in range(_ROUNDS):
         now = with_ticks(facts, ticks)
-        found = [*judged(now), *(one for one in _spares(now) if one.events in kept)]
-        met[ticks] = sorted_margins(found), -sum(getattr(ticks, name) for name in _CHOSEN)
+        found = [*judged(now), *(one for one in spare_by_notice(now) if one.events in kept)]
+        at = tuple(getattr(ticks, name) for name in _CHOSEN)
+        met[ticks] = room(at), sorted_margins(found), -sum(at)
         lines.learn(ticks, found)
-        ticks = _patient(facts, _pick(lines, ticks, given), found)
+        ticks = _patient(facts, _pick(_Goal(lines.grouped(), room), ticks, given), found)
         if ticks in met:
             break
     return max(met, key=lambda table: met[table])
 
 
-def _spares(facts: Facts) -> list[Judged]:
-    """Time to spare beside the limits: after a notice, and in the refresh timer."""
-    return [*spare_by_notice(facts), *spare_by_service(facts)]
+def _room(facts: Facts, start: TickTable) -> Callable[[tuple[int, ...]], int]:
+    """Ticks that a table lacks for the refresh timer, as a number below 0; 0 where there is room.
+
+    Room for the timer comes before any margin, unless the ticks to start from leave none either.
+    """
+    if spare_by_service(with_ticks(facts, start)) >= 0:
+        known: dict[tuple[int, ...], int] = {}
+
+        def room(at: tuple[int, ...]) -> int:
+            if at not in known:
+                known[at] = min(spare_by_service(with_ticks(facts, _table(start, at))), 0)
+            return known[at]
+
+        return room
+    return lambda _: 0
 
 
 def _patient(facts: Facts, ticks: TickTable, found: Iterable[Judged]) -> TickTable:
@@ -192,22 +248,21 @@ def _patient(facts: Facts, ticks: TickTable, found: Iterable[Judged]) -> TickTab
     return ticks
 
 
-def _pick(lines: _Lines, start: TickTable, given: GivenTicks) -> TickTable:
+def _pick(goal: _Goal, start: TickTable, given: GivenTicks) -> TickTable:
     """The best table by the lines met so far.
 
-    For each column tick every other tick is moved in turn until none gets better. Most margins hang on one of them
-    alone, and what the others share stays as it is in the comparison, so this settles in two or three turns.
+    For each column tick every other tick is moved in turn until none gets better; then single moves and trades of one
+    tick for another, until neither helps.
     """
-    groups = lines.grouped()
-    best = tuple(getattr(start, name) for name in _CHOSEN)
-    score = _score(groups, best)
-    columns = [given.column] if given.column is not None else _span(best[1], _LEAST["column"])
+    near = tuple(getattr(start, name) for name in _CHOSEN)
+    best, worth = near, goal.worth(near)
+    columns = [given.column] if given.column is not None else _span(near[1], _LEAST["column"])
     for column in columns:
-        choice = _settle(groups, (best[0], column, *best[2:]), best, given)
-        one = _score(groups, choice)
-        if one > score:
-            best, score = choice, one
-    return _table(start, _traded(groups, best, given))
+        choice = _settle(goal, (near[0], column, *near[2:]), near, given)
+        one = goal.beats(choice, worth)
+        if one is not None:
+            best, worth = choice, one
+    return _table(start, _traded(goal, best, worth, given))
 
 
 def _table(start: TickTable, at: tuple[int, ...]) -> TickTable:
@@ -226,26 +281,41 @@ def _table(start: TickTable, at: tuple[int, ...]) -> TickTable:
     )
 
 
-def _traded(groups: list[Group], at: tuple[int, ...], given: GivenTicks) -> tuple[int, ...]:
-    """What single moves cannot reach: one tick more here for one or two fewer there, until nothing gets better."""
+def _traded(goal: _Goal, at: tuple[int, ...], worth: Worth, given: GivenTicks) -> tuple[int, ...]:
+    """What single moves cannot reach: one tick more here for some fewer or more there, until nothing gets better."""
     open_ticks = [i for i, name in enumerate(_CHOSEN) if not _given(given, name)]
     if given.row_end is not None and given.column is None:
         open_ticks.remove(1)  # the column tick and the hold would have to move together
-    score = _score(groups, at)
     before: tuple[int, ...] | None = None
     while at != before:
         before = at
         for i in open_ticks:
             for j in open_ticks:
-                for fewer in (0, 1, 2):
-                    choice = list(before)
-                    choice[i] += 1
-                    choice[j] -= fewer
-                    if i == j or choice[j] < _LEAST[_CHOSEN[j]] or choice[0] >= choice[1]:
+                for step, other in _TRADES if i != j else _SINGLES:
+                    choice = list(at)
+                    choice[i] += step
+                    choice[j] += other
+                    if choice[0] >= choice[1] or any(choice[k] < _LEAST[_CHOSEN[k]] for k in (i, j)):
                         continue
-                    one = _score(groups, tuple(choice))
-                    if one > score:
-                        at, score = tuple(choice), one
+                    one = goal.beats(tuple(choice), worth)
+                    if one is not None:
+                        at, worth = tuple(choice), one
+            for step in (1, 2):
+                made = _made_room(goal, (*at[:i], at[i] + step, *at[i + 1 :]), [j for j in open_ticks if j != i])
+                one = goal.beats(made, worth)
+                if one is not None:
+                    at, worth = made, one
+    return at
+
+
+def _made_room(goal: _Goal, at: tuple[int, ...], payers: list[int]) -> tuple[int, ...]:
+    """Fewer of other ticks, where it hurts the margins least, until the refresh timer has room again."""
+    while goal.room(at) < 0:
+        choices = [(*at[:j], at[j] - 1, *at[j + 1 :]) for j in payers if at[j] > _LEAST[_CHOSEN[j]]]
+        choices = [choice for choice in choices if choice[0] < choice[1]]
+        if not choices:
+            break
+        at = max(choices, key=lambda choice: goal.worth(choice)[1:])
     return at
 
 
@@ -253,22 +323,24 @@ def _span(ticks: int, least: int) -> range:
     return range(max(least, ticks - _REACH), ticks + _REACH + 1)
 
 
-def _settle(groups: list[Group], at: tuple[int, ...], near: tuple[int, ...], given: GivenTicks) -> tuple[int, ...]:
+def _settle(goal: _Goal, at: tuple[int, ...], near: tuple[int, ...], given: GivenTicks) -> tuple[int, ...]:
     """Every tick but the column's, each at its best while the others stay, until nothing moves."""
     column = at[1]
     mux = min(at[0], column - 1) if given.mux is None else given.mux
     hold = at[2] if given.row_end is None else max(_LEAST["row_hold"], given.row_end - column)
     at = (mux, column, hold, *at[3:])
     open_ticks = [i for i, name in enumerate(_CHOSEN) if name != "column" and not _given(given, name)]
-    # Margins that a tick does not move are the same on both sides of the comparison and fall out of it.
-    moved = {i: [group for group in groups if _moves(group, i)] for i in open_ticks}
+    goals = {i: goal.about(i) for i in open_ticks}
     before: tuple[int, ...] | None = None
     while at != before:
         before = at
         for i in open_ticks:
-            values = range(1, column) if i == 0 else _span(near[i], _LEAST[_CHOSEN[i]])
-            choices = [(*at[:i], value, *at[i + 1 :]) for value in values]
-            at = max([at, *choices], key=lambda choice, i=i: _score(moved[i], choice))  # type: ignore[misc]
+            worth = goals[i].worth(at)
+            for value in range(1, column) if i == 0 else _span(near[i], _LEAST[_CHOSEN[i]]):
+                choice = (*at[:i], value, *at[i + 1 :])
+                one = goals[i].beats(choice, worth)
+                if one is not None:
+                    at, worth = choice, one
     return at
 
 
@@ -278,7 +350,3 @@ def _given(given: GivenTicks, name: str) -> bool:
 
 def _moves(group: Group, i: int) -> bool:
     return any(index == i for lines, guards in group[0] for line in (*lines, *guards) for index, _ in line[1])
-
-
-def _score(groups: list[Group], at: tuple[int, ...]) -> tuple[list[int], int]:
-    return _vector(groups, at), -sum(at)
