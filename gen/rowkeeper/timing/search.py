@@ -18,7 +18,7 @@ from rowkeeper.timing.margins import Judged, judged
 from rowkeeper.timing.refresh_bounds import spare_by_service
 from rowkeeper.timing.scenes import chips_of
 
-__all__ = ["best_ticks", "first_guess", "sorted_margins"]
+__all__ = ["best_ticks", "first_guess", "patient", "sorted_margins"]
 
 _ROUNDS = 8
 _REACH = 8  # how far from the guess each tick is tried
@@ -214,7 +214,7 @@ def best_ticks(facts: Facts, given: GivenTicks) -> TickTable:
         at = tuple(getattr(ticks, name) for name in _CHOSEN)
         met[ticks] = room(at), sorted_margins(found), -sum(at)
         lines.learn(ticks, found)
-        ticks = _patient(facts, _pick(_Goal(lines.grouped(), room), ticks, given), found)
+        ticks = patient(facts, _pick(_Goal(lines.grouped(), room), ticks, given), found)
         if ticks in met:
             break
     return max(met, key=lambda table: met[table])
@@ -237,7 +237,7 @@ def _room(facts: Facts, start: TickTable) -> Callable[[tuple[int, ...]], int]:
     return lambda _: 0
 
 
-def _patient(facts: Facts, ticks: TickTable, found: Iterable[Judged]) -> TickTable:
+def patient(facts: Facts, ticks: TickTable, found: Iterable[Judged]) -> TickTable:
     """`give_up` and `column_cap`: a bus clock later than the bus can need, and no later."""
     spare = _PATIENCE_CLOCKS * facts.clock.period_hi_ps
     for symbol, name in (("give up", "give_up"), ("column cap", "column_cap")):
