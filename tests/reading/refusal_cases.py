@@ -22,13 +22,14 @@ class Case:
 
 
 _RAS = (
-    "{net: ras_n, pin: 51, meets: U10-U17.4, through: [{buffer: SN74AHCT541, designator: U22}, {series: 33 ohm}, "
+    "{net: ras_n, pin: 51, meets: U10-U17.4, through: [{buffer: SN74AHCT541, designator: U22}, {series: 22 ohm}, "
     "{load: 90 pF}]}"
 )
 _MREQ = "{net: mreq_n, pin: 1, meets: X1.21, through: [{translator: SN74LVC245A, designator: U24}]}"
 _BANK = "{bank: 0, chip: 4116-15, chips: 8, sockets: U10-U17, window: {base: 0xC000, size: 16 KiB}}"
 _BUSACK = "  - {net: busack_n, pin: 8, meets: X1.26, through: [{translator: SN74LVC245A, designator: U24}]}\n"
 _RESET = "  - {net: reset_n, pin: 9, meets: X1.27, through: [{translator: SN74LVC245A, designator: U24}]}\n"
+_ENABLE = "{buffer: SN74LVC1G07, designator: U27}, {load: 45 pF}"
 _CLK = "{net: clk, pin: 15, meets: Y1.3, through: [{direct: 3.3 V}, {load: 10 pF}]}"
 
 CASES = (
@@ -150,15 +151,15 @@ CASES = (
         "{net: ma0, pin: 57, meets: U10-U17.5, through: [{buffer: SN74LVC1G07, designator: U30}, "
         "{buffer: SN74LVC1G07, designator: U30}",
     ),
-    Case("entry-of-two-kinds", "{direct: 3.3 V}, {load: 45 pF}", "{direct: 3.3 V, load: 45 pF}"),
-    Case("entry-of-unknown-kind", "{direct: 3.3 V}, {load: 45 pF}", "{drect: 3.3 V}, {load: 45 pF}"),
-    Case("load-in-the-middle", "{direct: 3.3 V}, {load: 45 pF}", "{load: 45 pF}, {direct: 3.3 V}"),
-    Case("load-missing", "{direct: 3.3 V}, {load: 45 pF}", "{direct: 3.3 V}"),
-    Case("load-of-a-bulk-capacitor", "{direct: 3.3 V}, {load: 45 pF}", "{direct: 3.3 V}, {load: 100000 pF}"),
+    Case("entry-of-two-kinds", _ENABLE, "{direct: 3.3 V, load: 45 pF}"),
+    Case("entry-of-unknown-kind", _ENABLE, "{drect: 3.3 V}, {load: 45 pF}"),
+    Case("load-in-the-middle", _ENABLE, "{load: 45 pF}, {direct: 3.3 V}"),
+    Case("load-missing", _ENABLE, "{direct: 3.3 V}"),
+    Case("load-of-a-bulk-capacitor", _ENABLE, "{direct: 3.3 V}, {load: 100000 pF}"),
     Case("load-below-the-chips", _RAS, _RAS.replace("90 pF", "40 pF")),
     Case("load-beyond-the-sheet", "designator: U6}, {load: 45 pF}", "designator: U6}, {load: 100 pF}"),
-    Case("series-of-a-pull-up", _RAS, _RAS.replace("33 ohm", "4.7 kohm")),
-    Case("wire-to-no-supply", "{direct: 3.3 V}, {load: 45 pF}", "{direct: 4 V}, {load: 45 pF}"),
+    Case("series-of-a-pull-up", _RAS, _RAS.replace("22 ohm", "4.7 kohm")),
+    Case("wire-to-no-supply", _ENABLE, "{direct: 4 V}, {load: 45 pF}"),
     # --- levels
     Case("bus-line-straight-in", _MREQ, "{net: mreq_n, pin: 1, meets: X1.21, through: [{direct: 5 V}]}"),
     Case(
@@ -166,8 +167,13 @@ CASES = (
         _MREQ,
         "{net: mreq_n, pin: 1, meets: X1.21, through: [{buffer: SN74AHCT541, designator: U30}]}",
     ),
+    Case(
+        "translator-with-cmos-thresholds",
+        _MREQ,
+        _MREQ.replace("SN74LVC245A, designator: U24", "SN74LVC8T245-BA, designator: U34"),
+    ),
     Case("strobe-straight-out", _RAS, _RAS.replace("{buffer: SN74AHCT541, designator: U22}", "{direct: 3.3 V}")),
-    Case("wire-at-the-supply-of-the-other-side", "{direct: 3.3 V}, {load: 45 pF}", "{direct: 5 V}, {load: 45 pF}"),
+    Case("wire-at-the-supply-of-the-other-side", _ENABLE, "{direct: 5 V}, {load: 45 pF}"),
     Case("bus-wire-at-3-v", "meets: U10-U17.2, through: [{direct: 5 V}", "meets: U10-U17.2, through: [{direct: 3.3 V}"),
     Case("buffer-in-a-memory-socket", "{buffer: SN74LS244, designator: U6}", "{buffer: SN74LS244, designator: U12}"),
     Case("revision-that-is-a-block", "revision: B", "revision: [B]"),

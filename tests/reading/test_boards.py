@@ -54,7 +54,7 @@ def test_wiring_of_the_loom() -> None:
     nets = {net.name: net for net in loom().wiring.nets}
     assert len(nets) == 38
     assert [element.kind for element in nets["ras_n"].through] == ["part", "series", "load"]
-    assert nets["ras_n"].through[1].series_milliohm == 33_000
+    assert nets["ras_n"].through[1].series_milliohm == 22_000
     assert nets["ras_n"].through[2].load_ff == 90_000
     assert (nets["data_out"].pin, nets["data_out"].side) == ("", "path")
     assert {net.side for net in nets.values() if net.pin} == {"input", "output"}
@@ -230,7 +230,7 @@ def test_schema_rejects_unknown_keys() -> None:
         (b"standby: own-timer", b"standby: mine"),
         (b"net: ras_n", b"net: wire"),
         (b"meets: U10-U17.4", b"meets: somewhere"),
-        (b"{direct: 3.3 V}, {load: 45 pF}", b"{direct: 3.3 V, load: 45 pF}"),
+        (b"{direct: 3.3 V}, {load: 10 pF}", b"{direct: 3.3 V, load: 10 pF}"),
         (b'"Loom card memory, 16 KB"', b'"<b>Loom</b>"'),
     ],
 )
