@@ -211,3 +211,14 @@ def test_figure_rows_show_the_sheet_as_printed() -> None:
     assert rows["TdM1f(IORQf)", "2.5 MHz"].min == "2 TcC + TwCh + TfC - 80"
     assert {row.symbol: row.max for row in figure_rows("SN74LVC245A")}["delay"] == "6.3"
     assert {row.symbol: row.min for row in figure_rows("4116-15")}["tCRP"] == "-20"
+
+
+@pytest.mark.parametrize("name", sorted(catalogue.parts()))
+def test_pins_of_a_part_fill_its_package(name: str) -> None:
+    """Channels and fixed pins together are pins 1 to the last, each once; only the single gate has none spare."""
+    part = catalogue.part(name)
+    assert part.pins is not None
+    assert len(part.pins.channels) == part.channels
+    pins = [pin for pair in part.pins.channels for pin in pair] + [pin.pin for pin in part.pins.fixed]
+    assert sorted(map(int, pins)) == list(range(1, len(pins) + 1))
+    assert len(pins) in (5, 20, 24)

@@ -24,6 +24,7 @@ __all__ = [
     "ClockSpec",
     "Device",
     "DevicePin",
+    "FixedPin",
     "GivenTicks",
     "IoLevels",
     "LogicFamily",
@@ -31,6 +32,7 @@ __all__ = [
     "Net",
     "Original",
     "Part",
+    "PartPins",
     "PathElement",
     "RcDelay",
     "Wiring",
@@ -197,6 +199,24 @@ class Device:
 
 
 @dataclass(frozen=True, slots=True)
+class FixedPin:
+    """A pin that carries no net of its own: enable, direction, supply. `tie`: what it wants, in words."""
+
+    pin: str
+    name: str
+    tie: str
+
+
+@dataclass(frozen=True, slots=True)
+class PartPins:
+    """The pins of a package. `channels`: input pin and output pin of each, in the order they are used up."""
+
+    channels: tuple[tuple[str, str], ...]
+    fixed: tuple[FixedPin, ...]
+    source: Source
+
+
+@dataclass(frozen=True, slots=True)
 class Part:
     """A buffer, translator or gate that a net passes through; `delay`, `enable`, `disable` in picoseconds.
 
@@ -220,6 +240,7 @@ class Part:
     load_rated_pf: int = 50
     load_slope_ps: int | None = None
     load_source: Source = _UNSOURCED
+    pins: PartPins | None = None
 
 
 @dataclass(frozen=True, slots=True)

@@ -6,7 +6,18 @@ the file came from, nor who asks.
 
 from typing import Literal, TypeAlias, cast
 
-from rowkeeper.reading.board import BusFamily, BusGrade, BusTraffic, Chip, Device, DevicePin, LogicFamily, Part
+from rowkeeper.reading.board import (
+    BusFamily,
+    BusGrade,
+    BusTraffic,
+    Chip,
+    Device,
+    DevicePin,
+    FixedPin,
+    LogicFamily,
+    Part,
+    PartPins,
+)
 from rowkeeper.reading.figure_table import Columns, read_figures, read_formulas, read_levels, read_source, read_sources
 from rowkeeper.reading.figures import Figure, Mark, Source
 from rowkeeper.reading.problems import Problems
@@ -243,9 +254,35 @@ _PART_KEYS = (
 )  # fmt: skip
 
 
+def _fixed_pin(node: Node, problems: Problems) -> FixedPin:
+    section = Section(node, "a fixed pin", problems, ("pin", "name", "tie"))
+    pin, name, tie = (section.take(key, plain_text, "") for key in ("pin", "name", "tie"))
+    return FixedPin(pin, name, tie)
+
+
+def _part_pins(file: Section, sources: dict[str, Source]) -> PartPins | None:
+    """The pin table of a part, where its file has one: every pin once, a channel for each that the part has."""
+    section, problems = _sub(file, "pins", ("source", "inputs", "outputs", "fixed")), file.problems
+    if section is None:
+        return None
+    inputs, outputs = _texts(section, "inputs"), _texts(section, "outputs")
+    fixed = tuple(_fixed_pin(node, problems) for node in section.items("fixed"))
+    channels = _number(file, "channels")
+    if section.whole and not len(inputs) == len(outputs) == channels:
+        problems.add(
+            section.at, f"{len(inputs)} inputs and {len(outputs)} outputs for {channels} channels", "name a pair for each"
+        )
+    numbers = [*inputs, *outputs, *(pin.pin for pin in fixed)]
+    twice = next((number for number in numbers if numbers.count(number) > 1), None)
+    if twice is not None:
+        problems.add(section.at, f"pin {twice} stands twice", "name every pin once")
+    pairs = tuple(zip(inputs, outputs, strict=False))
+    return PartPins(pairs, fixed, read_source(section.node("source"), sources, problems))
+
+
 def read_parts(root: Node, problems: Problems) -> tuple[Part, ...]:
     """A buffer or translator."""
-    file = Section(root, "a part", problems, _PART_KEYS, ("notes",))
+    file = Section(root, "a part", problems, _PART_KEYS, ("notes", "pins"))
     sources = read_sources(file.node("sources"), problems)
     figures = _named_figures(file, sources, ("delay",))
     supply = _sub(file, "supply", ("nominal", "max"))
@@ -275,5 +312,6 @@ def read_parts(root: Node, problems: Problems) -> tuple[Part, ...]:
         load_rated_pf=load.take("rated", _picofarads, 50),
         load_slope_ps=load.take("slope", time_ps, 0) if load.has("slope") else None,
         load_source=read_source(load.node("source"), sources, problems),
+        pins=_part_pins(file, sources),
     )
     return (part,) if file.whole else ()
