@@ -48,6 +48,12 @@ def _commands() -> ModuleType:
     return commands
 
 
+def _what_if() -> ModuleType:
+    from rowkeeper.run import what_if
+
+    return what_if
+
+
 def _line() -> ModuleType:
     """The rooms behind the long commands: logic, solvers and tools are loaded for these alone."""
     from rowkeeper.run import line
@@ -84,10 +90,20 @@ def generate(board: Path, out: Path, as_json: bool, quiet: bool) -> None:
 @_BOARD
 @click.option("--explain", metavar="LIMIT", help="Show every term of one limit, such as tRP.")
 @click.option("--routed", is_flag=True, help="Place and route first and judge with the router's delays.")
+@click.option("--vary", metavar="WHAT", help="What if: clock=2..8MHz, chip=4116-15,4116-20 or chip=all.")
+@click.option("--picture", type=click.Path(path_type=Path, dir_okay=False), help="With --vary: also draw it, as SVG.")
 @_JSON
 @_QUIET
-def margins(board: Path, explain: str | None, routed: bool, as_json: bool, quiet: bool) -> None:
+def margins(
+    board: Path, explain: str | None, routed: bool, vary: str | None, picture: Path | None, as_json: bool, quiet: bool
+) -> None:
     """Every timing limit with its margin, worst first."""
+    if vary is not None:
+        if explain is not None or routed:
+            raise click.UsageError("--vary goes with neither --explain nor --routed")
+        _finish(_what_if().vary(board, vary, picture, as_json, _progress(quiet)))
+    if picture is not None:
+        raise click.UsageError("--picture draws what --vary finds: give --vary")
     _finish(_commands().margins(board, explain, routed, as_json, _progress(quiet)))
 
 
