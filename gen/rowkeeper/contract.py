@@ -23,6 +23,7 @@ __all__ = [
     "FindingGroup",
     "FitOutcome",
     "LevelMargin",
+    "LevelNeed",
     "Levels",
     "Margin",
     "NetDelay",
@@ -271,6 +272,7 @@ class LevelMargin:
 
     A margin is None where one of the two sheets gives no figure: `note` says so. `highest_mv` is the most that the
     driver can put on the pin, `limit_mv` what the pin stands. `mend`: what would mend it, empty where all is well.
+    `pulled_up`: for an open-drain output, whether the parts list names a pull-up for the net; None for any other.
     """
 
     net: str
@@ -291,6 +293,7 @@ class LevelMargin:
     direction: str = ""
     mend: str = ""
     note: str = ""
+    pulled_up: bool | None = None
 
     @property
     def over_mv(self) -> int:
@@ -301,9 +304,25 @@ class LevelMargin:
 
     @property
     def holds(self) -> bool:
-        """No known margin is below zero and no pin is driven beyond its absolute maximum."""
+        """No known margin is below zero, no pin is beyond its absolute maximum, no open drain lacks its pull-up."""
         known = [m for m in (self.high_margin_mv, self.low_margin_mv) if m is not None]
-        return all(m >= 0 for m in known) and self.over_mv == 0
+        return all(m >= 0 for m in known) and self.over_mv == 0 and self.pulled_up is not False
+
+
+@dataclass(frozen=True, slots=True)
+class LevelNeed:
+    """A net whose two ends do not fit each other straight: what would happen, and which family mends it.
+
+    `straight_mv`: the smaller margin without any part between; `straight_over_mv`: how far the receiver's pin would be
+    driven beyond its absolute maximum. `stands`: the parts the board file has there, empty where it has none.
+    """
+
+    net: str
+    direction: str
+    straight_mv: int | None
+    straight_over_mv: int
+    wanted: str
+    stands: str
 
 
 @dataclass(frozen=True, slots=True)
@@ -351,6 +370,7 @@ class Levels:
     """Everything electrical of one board: wires, drives, and the synchronisers."""
 
     wires: tuple[LevelMargin, ...]
+    needs: tuple[LevelNeed, ...]
     drives: tuple[Drive, ...]
     settling: tuple[Settling, ...]
 

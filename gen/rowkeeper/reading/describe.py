@@ -119,7 +119,8 @@ def _family_rows(family: LogicFamily) -> Iterator[FigureRow]:
         ("output low", family.low, family.output_source),
     )
     for symbol, (low, high), source in pairs:
-        yield _row(symbol, "", _level(low), _level(high), "", source, "shares are of the supply")
+        note = "of the supply" if low.of_supply or high.of_supply else ""
+        yield _row(symbol, "", _level(low), _level(high), "", source, note)
     for symbol, (least, most) in (("output high", family.high_milliohm), ("output low", family.low_milliohm)):
         yield _row(symbol, "", _number(least, 1000), _number(most, 1000), "ohm", family.resistance_source)
     for symbol, current in (("input low sources", family.input_low_ua), ("input high sinks", family.input_high_ua)):

@@ -14,6 +14,7 @@ __all__ = ["check_levels"]
 # Transistor-transistor logic is designed to it; less of it between a 3.3 V device and a memory input asks for a buffer.
 _NOISE_MARGIN_MV = 400
 _DEVICE_RAIL_MV = 3300
+_CMOS_VIH_MV = 3000  # no input with TTL thresholds asks for so much, nor a strobe of three supplies
 _BUS_RAIL_MV = 5000
 _ON_MEMORY_STROBES = ("ras_n", "cas_n", "we_n")
 
@@ -61,6 +62,9 @@ def _receiver(net: Net, chip: Chip, bus: BusFamily, device: Device) -> _End | No
 def _fix(driver: _End, receiver: _End) -> str:
     if receiver.is_device:
         return "put a translator in front of the device, for example `{translator: SN74LVC245A, designator: U24}`"
+    asks = receiver.levels.vih_min_mv
+    if asks is not None and asks > _CMOS_VIH_MV and not driver.is_device:
+        return "take a part with TTL thresholds, for example SN74LVC245A: a TTL level does not satisfy CMOS thresholds"
     if driver.is_device:
         return "put a 5 V buffer behind the device, for example `{buffer: SN74AHCT541, designator: U22}`"
     return "put a part between the two that fits both"

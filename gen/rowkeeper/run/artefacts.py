@@ -14,11 +14,15 @@ from rowkeeper.logic.replacement import ports_of
 from rowkeeper.logic.verilog import verilog_text
 from rowkeeper.run.pipeline import Work
 from rowkeeper.sheets.facts import board_stamp, sheet_facts
+from rowkeeper.sheets.level_tables import levels_text
+from rowkeeper.sheets.original_tables import original_text
 from rowkeeper.sheets.pins_csv import pins_csv
 from rowkeeper.sheets.plan_tables import plan_text
 from rowkeeper.sheets.sheet_html import sheet_html
 from rowkeeper.sheets.stamp import Stamp, with_header
 from rowkeeper.sheets.verdict import junit_xml, manifest_json, plan_json, verdict_json
+from rowkeeper.timing.levels import levels_of
+from rowkeeper.timing.original import original_report
 
 __all__ = ["artefacts", "sheet_artefacts", "stamped_logic"]
 
@@ -28,8 +32,10 @@ def artefacts(work: Work, verdict: Verdict) -> Mapping[str, bytes]:
     stamp = board_stamp(work.board, __version__)
     files: dict[str, bytes] = {
         "logic.v": stamped_logic(work).encode(),
-        "margins.txt": plan_text(work.plan, every=True).encode(),
-        "margins.json": plan_json(stamp, work.plan).encode(),
+        "margins.txt": _margins_text(work).encode(),
+        "margins.json": plan_json(
+            stamp, work.plan, levels_of(work.board), original_report(work.board, work.plan)
+        ).encode(),
         "verdict.json": verdict_json(stamp, verdict, work.plan, work.claims, work.bench, work.fit).encode(),
         "junit.xml": junit_xml(stamp, verdict).encode(),
         **_sheets(work, verdict),
@@ -38,6 +44,13 @@ def artefacts(work: Work, verdict: Verdict) -> Mapping[str, bytes]:
     files |= {f"bench/{name}": data for name, data in emit_bench(work.board, work.design, work.windows).items()}
     files |= {f"traces/{claim.claim}-{claim.subject}.vcd": claim.trace_vcd.encode() for claim in _broken(work)}
     return _with_manifest(files, stamp)
+
+
+def _margins_text(work: Work) -> str:
+    """Every margin in every situation, the levels, and what the board had before where its file says."""
+    original = original_report(work.board, work.plan)
+    parts = [plan_text(work.plan, every=True), levels_text(levels_of(work.board))]
+    return "\n".join([*parts, original_text(original)] if original else parts)
 
 
 def sheet_artefacts(work: Work, verdict: Verdict) -> Mapping[str, bytes]:

@@ -17,6 +17,7 @@ from rowkeeper.run.progress import EXPECTED_S, Progress
 from rowkeeper.sheets.facts import board_stamp
 from rowkeeper.sheets.outcome_tables import claims_text, verdict_text
 from rowkeeper.sheets.verdict import json_text, junit_xml, verdict_json
+from rowkeeper.timing.levels import levels_of
 
 __all__ = ["generate", "prove", "sheet", "simulate"]
 
@@ -45,7 +46,8 @@ def _judged(work: Work, found: Verdict, as_json: bool) -> Answer:
     if as_json:
         stamp = board_stamp(work.board, __version__)
         return Answer(verdict_json(stamp, found, work.plan, work.claims, work.bench, work.fit), found.exit_code)
-    parts = [refused_text(work.plan), claims_text(work.claims) if work.claims else "", verdict_text(found)]
+    refused = refused_text(work.plan, levels_of(work.board))
+    parts = [refused, claims_text(work.claims) if work.claims else "", verdict_text(found)]
     return Answer("\n".join(part for part in parts if part), found.exit_code)
 
 

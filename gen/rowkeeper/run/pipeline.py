@@ -28,6 +28,7 @@ from rowkeeper.judging.claims.bounds import Bounds
 from rowkeeper.judging.claims.catalogue import claims
 from rowkeeper.judging.claims.proving import ShortTexts, prove_all
 from rowkeeper.judging.claims.short import shortened
+from rowkeeper.judging.level_verdict import level_findings
 from rowkeeper.judging.verdict import bench_findings, claim_findings, fit_findings, plan_findings, verdict_of
 from rowkeeper.logic.emit import rtlil_text
 from rowkeeper.logic.invariants import probe_text
@@ -38,6 +39,7 @@ from rowkeeper.reading.board import Board
 from rowkeeper.reading.figures import Window
 from rowkeeper.run.progress import Progress
 from rowkeeper.timing.bus_in_ticks import bus_in_ticks
+from rowkeeper.timing.levels import levels_of
 from rowkeeper.timing.paths import default_delays, net_windows
 from rowkeeper.timing.plan import design_of, judge, settle
 from rowkeeper.tools import TimedOut, ToolMissing, available
@@ -174,7 +176,7 @@ def _icarus(work: Work, seed: int, progress: Progress) -> list[BenchOutcome]:
 
 def verdict(work: Work, expected: tuple[str, ...]) -> Verdict:
     """Everything found, and what was asked for and gave nothing. `expected`: groups that must be there."""
-    findings = [*plan_findings(work.plan, routed_wanted="fit" in expected)]
+    findings = [*plan_findings(work.plan, routed_wanted="fit" in expected), *level_findings(levels_of(work.board))]
     if work.fit is not None:
         findings += fit_findings(work.fit)
     findings += claim_findings(work.claims)

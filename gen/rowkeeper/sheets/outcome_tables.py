@@ -16,6 +16,7 @@ __all__ = ["bench_text", "claims_text", "status_word", "verdict_line", "verdict_
 _WORDS = {Status.PASSED: "passed", Status.FAILED: "FAILED", Status.NOT_RUN: "NOT RUN"}
 _TITLES = {
     "margin": "Margins",
+    "level": "Levels",
     "arbitration": "Arbitration",
     "refresh": "Refresh",
     "claim": "Claims",

@@ -11,7 +11,18 @@ from dataclasses import fields, is_dataclass
 from enum import Enum
 from xml.etree import ElementTree
 
-from rowkeeper.contract import BenchOutcome, ClaimOutcome, Finding, FitOutcome, Margin, Plan, Status, Verdict
+from rowkeeper.contract import (
+    BenchOutcome,
+    ClaimOutcome,
+    Finding,
+    FitOutcome,
+    Levels,
+    Margin,
+    OriginalReport,
+    Plan,
+    Status,
+    Verdict,
+)
 from rowkeeper.sheets.plain import one_line
 from rowkeeper.sheets.stamp import Stamp
 
@@ -46,9 +57,11 @@ def _origin(stamp: Stamp) -> dict[str, Json]:
     return {"tool": {"name": _TOOL, "version": stamp.version}, "board": board}
 
 
-def plan_json(stamp: Stamp, plan: Plan) -> str:
-    """A plan with every term of every margin."""
-    return json_text(_origin(stamp) | {"plan": plain_value(plan)})
+def plan_json(stamp: Stamp, plan: Plan, levels: Levels | None = None, original: OriginalReport | None = None) -> str:
+    """A plan with every term of every margin; the levels and what the board had before, where they are known."""
+    more = {"levels": levels, "original": original}
+    known = {name: plain_value(record) for name, record in more.items() if record is not None}
+    return json_text(_origin(stamp) | {"plan": plain_value(plan)} | known)
 
 
 def verdict_json(

@@ -141,8 +141,8 @@ def _network_text(delay: RcDelay) -> str:
 
 def _nominal(delay: RcDelay, edge: Edge) -> int | None:
     """What a usual part does, without its currents: shown, never judged."""
-    if delay.input.nominal is None or delay.driver.nominal is None:
-        return None
+    if delay.input.nominal is None or delay.driver.nominal is None or (delay.input.schmitt and edge == "falling"):
+        return None  # the usual threshold of a Schmitt input is that of the rising edge
     supply = sum(_supplies(delay)) // 2
     threshold = delay.input.nominal[0].at(supply)
     high, low = (level.at(supply) for level in delay.driver.nominal[1:])
