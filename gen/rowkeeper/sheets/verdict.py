@@ -12,6 +12,7 @@ from enum import Enum
 from xml.etree import ElementTree
 
 from rowkeeper.contract import (
+    ArbitrationSum,
     BenchOutcome,
     ClaimOutcome,
     Finding,
@@ -20,7 +21,9 @@ from rowkeeper.contract import (
     Margin,
     OriginalReport,
     Plan,
+    RefreshBounds,
     Status,
+    Term,
     Verdict,
 )
 from rowkeeper.sheets.plain import one_line
@@ -61,7 +64,30 @@ def plan_json(stamp: Stamp, plan: Plan, levels: Levels | None = None, original: 
     """A plan with every term of every margin; the levels and what the board had before, where they are known."""
     more = {"levels": levels, "original": original}
     known = {name: plain_value(record) for name, record in more.items() if record is not None}
-    return json_text(_origin(stamp) | {"plan": plain_value(plan)} | known)
+    margins: Json = [_with_ends(margin) for margin in plan.margins]
+    sums: Json = [_sum_with_ends(one) for one in plan.arbitration]
+    refresh: Json = _without(plan.refresh, "terms") | {"terms": _ends(plan.refresh.terms)}
+    body = _without(plan) | {"margins": margins, "arbitration": sums, "refresh": refresh}
+    return json_text(_origin(stamp) | {"plan": body} | known)
+
+
+def _with_ends(margin: Margin) -> Json:
+    return _without(margin) | {"terms": _ends(margin.terms)}
+
+
+def _sum_with_ends(one: ArbitrationSum) -> Json:
+    return _without(one) | {"available": _ends(one.available), "needed": _ends(one.needed)}
+
+
+def _ends(terms: Sequence[Term]) -> Json:
+    """Terms, each with the end of its promise that was used."""
+    return [_without(term) | {"used_end": _end(term)} for term in terms]
+
+
+def _end(term: Term) -> str:
+    if term.lo_ps == term.hi_ps:
+        return "both"
+    return "low" if term.lo_ps is not None and abs(term.used_ps) == abs(term.lo_ps) else "high"
 
 
 def verdict_json(
@@ -90,7 +116,9 @@ def _plan(plan: Plan) -> Json:
     return _without(plan, "margins") | {"margins": [_without(margin, "terms") for margin in plan.margins]}
 
 
-def _without(record: Plan | Margin | ClaimOutcome, *names: str) -> dict[str, Json]:
+def _without(
+    record: Plan | Margin | ClaimOutcome | Term | ArbitrationSum | RefreshBounds, *names: str
+) -> dict[str, Json]:
     """A record as JSON, some of its fields left out: traces have files of their own."""
     chosen = [field.name for field in fields(record) if field.name not in names]
     return {name: plain_value(getattr(record, name)) for name in chosen}
