@@ -201,9 +201,9 @@ def wiring(row_bits: int, busreq: bool = True) -> Wiring:
     nets += [Net(n, "input", f"{i + 2}", "J1", _through((LVC245, "U1"))) for i, n in enumerate(lines)]
     nets += [Net(f"a{i}", "input", f"{i + 20}", "J1", _through((LVC245, f"U{2 + i // 8}"))) for i in range(16)]
     strobes = ("ras_n", "cas_n", "we_n")
-    nets += [Net(n, "output", f"{i + 40}", "U10", _through((AHCT541, "U5"), (33, 80))) for i, n in enumerate(strobes)]
+    nets += [Net(n, "output", f"{i + 40}", "U10", _through((AHCT541, "U5"), (12, 80))) for i, n in enumerate(strobes)]
     nets += [Net("read_n", "output", "45", "U4.1", _through((AHCT541, "U5")))]
-    nets += [Net(f"ma{i}", "output", f"{i + 50}", "U10", _through((AHCT541, "U6"), (33, 40))) for i in range(row_bits)]
+    nets += [Net(f"ma{i}", "output", f"{i + 50}", "U10", _through((AHCT541, "U6"), (12, 40))) for i in range(row_bits)]
     nets += [Net("data_in", "path", "", "U10.2", (PathElement("direct"),))]
     nets += [Net("data_out", "path", "", "J1", _through((LS244, "U4")))]
     return Wiring(tuple(nets), (), (), ())

@@ -7,6 +7,7 @@ import pytest
 
 from rowkeeper.contract import ArbitrationSum, TickTable
 from rowkeeper.reading.board import Board
+from rowkeeper.reading.figures import Mark
 from rowkeeper.timing.arbitration import arbitration
 from rowkeeper.timing.device import Facts, facts_of
 from rowkeeper.timing.paths import default_delays
@@ -24,6 +25,7 @@ TICK_LO, TICK_HI = 9_999, 10_001
 PERIOD_LO, PERIOD_HI = 249_975, 250_026
 IN_LO, IN_HI = 2_500, 16_300
 OWN_REFRESH = (3 + 17 + 12) * TICK_HI
+EDGE = 12_000  # a driven edge of 10 ns/V, from 0.8 to 2.0 V
 
 
 def facts(board: Board = LOOM, ticks: TickTable = TICKS) -> Facts:
@@ -128,26 +130,54 @@ def sums(board: Board) -> dict[str, ArbitrationSum]:
 def test_end_of_grant_needs_no_set_up() -> None:
     """From the Cr that takes BUSREQ: a clock, half a clock, MREQ; against a refresh begun at the last moment."""
     available = PERIOD_LO + 119_988 + IN_LO + 2 * TICK_LO
-    needed = IN_HI + TICK_HI + TICK_HI + OWN_REFRESH
+    needed = EDGE + IN_HI + TICK_HI + TICK_HI + OWN_REFRESH
     found = sums(LOOM)["end of a grant"]
     assert (available - needed, "BUSREQ rising") == (found.margin_ps, found.notice)
+    assert found.margin_ps == 24_127
 
 
 def test_end_of_grant_takes_the_set_up_where_it_must_and_says_so() -> None:
     """A longer refresh eats what was left; TsBUSREQ 50 ns is a demand of the bus and may be counted."""
     slow = facts(ticks=replace(TICKS, refresh_low=24))
     found = {one.event: one for one in arbitration(slow)}["end of a grant"]
-    plain = PERIOD_LO + 119_988 + IN_LO + 2 * TICK_LO - IN_HI - 2 * TICK_HI - OWN_REFRESH - 7 * TICK_HI
+    available = PERIOD_LO + 119_988 + IN_LO + 2 * TICK_LO
+    plain = available - EDGE - IN_HI - 2 * TICK_HI - OWN_REFRESH - 7 * TICK_HI
     assert plain < 0
-    assert plain + 50_000 == found.margin_ps
+    assert plain + 50_000 == found.margin_ps == 4_120
     assert "set-up" in found.notice
+
+
+def test_the_edge_of_the_line_alone_can_ask_for_the_set_up() -> None:
+    """Three ticks more of refresh fit a line that switches at once, and not one that takes 12 ns over it."""
+    slow = facts(ticks=replace(TICKS, refresh_low=20))
+    found = {one.event: one for one in arbitration(slow)}["end of a grant"]
+    at_once = PERIOD_LO + 119_988 + IN_LO + 2 * TICK_LO - IN_HI - 2 * TICK_HI - OWN_REFRESH - 3 * TICK_HI
+    assert at_once == 6_124
+    assert at_once - EDGE + 50_000 == found.margin_ps == 44_124
+    assert "set-up" in found.notice
+
+
+def test_the_edge_of_the_line_is_needed_first() -> None:
+    """10 ns/V is what the translators' sheet asks (SCAS218T); two receivers of one line switch up to 1.2 V apart."""
+    without_busreq = replace(LOOM, wiring=wiring(7, busreq=False))
+    found = [*sums(LOOM).values(), *sums(without_busreq).values()]
+    edges = [(one.needed[0].lo_ps, one.needed[0].hi_ps, one.needed[0].used_ps) for one in found]
+    assert edges == [(0, 10 * (2_000 - 800), EDGE)] * 4
+    assert all(one.needed[0].name == "edge of the line, 0.8 to 2.0 V" for one in found)
+    assert all(one.needed[0].source.mark is Mark.PRACTICE for one in found)
+
+
+def test_the_edge_of_the_line_is_counted_once() -> None:
+    """MREQ is judged at its fastest, so no edge of its own is added to what is available."""
+    for one in sums(LOOM).values():
+        assert [t.name for t in (*one.available, *one.needed) if "edge of the line" in t.name] == [one.needed[0].name]
 
 
 def test_end_of_grant_without_BUSREQ_fails() -> None:
     """BUSACK rises 90 ns after Cf, MREQ falls a clock after that Cf: far too late."""
     found = sums(replace(LOOM, wiring=wiring(7, busreq=False)))["end of a grant"]
     available = PERIOD_LO - 90_000 + IN_LO + 2 * TICK_LO
-    assert available - IN_HI - 2 * TICK_HI - OWN_REFRESH == found.margin_ps == -173_861
+    assert available - EDGE - IN_HI - 2 * TICK_HI - OWN_REFRESH == found.margin_ps == -185_861
     assert "BUSREQ is not wired" in found.notice
 
 
@@ -155,7 +185,7 @@ def test_end_of_reset() -> None:
     """Two restart clocks more than a grant has one, and no set-up for a reset that keeps no step."""
     available = 2 * PERIOD_LO + 119_988 + IN_LO + 2 * TICK_LO
     found = sums(LOOM)["end of reset"]
-    assert available - IN_HI - 2 * TICK_HI - OWN_REFRESH == found.margin_ps
+    assert available - EDGE - IN_HI - 2 * TICK_HI - OWN_REFRESH == found.margin_ps == 274_102
     assert all("set-up" not in term.name for term in found.available)
 
 

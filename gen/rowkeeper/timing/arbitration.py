@@ -5,7 +5,7 @@ that is the notice. A line that is not wired gives none. Must not know how ticks
 """
 
 from rowkeeper.contract import ArbitrationSum, Note, Term
-from rowkeeper.reading.figures import Figure
+from rowkeeper.reading.figures import Figure, Mark, Source
 from rowkeeper.timing.bus import from_figure
 from rowkeeper.timing.device import SYNCHRONISER, Facts, counted
 from rowkeeper.timing.margins import Judged, spare
@@ -13,6 +13,11 @@ from rowkeeper.timing.network import UNPUBLISHED, Promise
 
 __all__ = ["arbitration", "arbitration_notes", "own_refresh_can_be_seen", "spare_by_notice", "wired"]
 
+# BUSREQ, BUSACK and RESET are driven edges: the translators' sheet asks 10 ns/V (SCAS218T), and two receivers may each
+# switch anywhere from 0.8 to 2.0 V.
+_EDGE = Term(
+    "edge of the line, 0.8 to 2.0 V", 0, 12_000, 12_000, Source(Mark.PRACTICE, "a driven edge of 10 ns/V, no RC")
+)
 _SETUP = "set-up the bus asks of this line"
 _SPANS = ("row_setup", "refresh_low", "precharge")
 
@@ -55,7 +60,7 @@ def _needed(facts: Facts, net: str) -> list[Term]:
         Term("aperture of the first flip-flop", -wide, wide, wide, facts.aperture.source),
         _term(counted(facts, plus=SYNCHRONISER - 1), upper=True),
     ]
-    return path + seen + [_term(counted(facts, name), upper=True) for name in _SPANS]
+    return [_EDGE, *path, *seen] + [_term(counted(facts, name), upper=True) for name in _SPANS]
 
 
 def _request(facts: Facts) -> list[Term]:

@@ -1,8 +1,8 @@
 """What a net passes through on its way, as promises in the order of travel.
 
 Takes the board's wiring and the device's delays; gives the path of a net or of a group of nets. Series resistance
-into a load settles within 0.7 R C (ln 2, to half of the swing) and may settle at once; the figure is arithmetic on
-the board file. Must not know cycles, limits or ticks.
+into a load settles within 1.93 R C, to the levels a memory sheet counts from, and may settle at once; the figure is
+arithmetic on the board file. Must not know cycles, limits or ticks.
 """
 
 from collections.abc import Mapping
@@ -173,10 +173,14 @@ def _loading(net: str, part: Part | None, load_ff: int) -> list[Promise]:
 
 
 def _settling(board: Board, net: str, series_milliohm: int, load_ff: int) -> list[Promise]:
-    """0 to 0.7 R C, rounded up to a picosecond; milliohm x femtofarad is 10 ** -6 ps."""
+    """0 to 1.93 R C, rounded up to a picosecond; milliohm x femtofarad is 10 ** -6 ps.
+
+    A memory sheet counts its times from VIL(max) and VIH(min). The longer way is the fall from 5.5 V to 0.8 V,
+    ln(5.5 / 0.8) = 1.928 R C; a rise to 2.7 V at 4.4 V takes ln(4.4 / 1.7) = 0.951 R C.
+    """
     if not series_milliohm or not load_ff:
         return []
-    hi_ps = -(-7 * series_milliohm * load_ff // 10**7)
+    hi_ps = -(-193 * series_milliohm * load_ff // 10**8)
     ohm, picofarad = series_milliohm / 1000, load_ff / 1000
-    source = Source(Mark.DERIVED, f"0.7 R C of {ohm:g} ohm and {picofarad:g} pF in {board.file}")
+    source = Source(Mark.DERIVED, f"1.93 R C of {ohm:g} ohm and {picofarad:g} pF in {board.file}")
     return [Promise(f"{net}: settling", 0, hi_ps, source)]

@@ -311,6 +311,8 @@ def _whatever(facts: Facts, chip: Chip) -> Scene:
     network.promise("column rises", "address released", counted(facts, plus=1, at_least=True))
     network.promise("row rises", "next row falls", counted(facts, "precharge", at_least=True))
     network.promise("column rises", "next row falls", counted(facts, "column_rest", at_least=True))
+    # The address is let go of one flip-flop early, so whatever was on the bus stands this long before the row strobe.
+    network.promise("address frozen", "row falls", counted(facts, plus=SYNCHRONISER))
     for net, edge, event in (
         ("ras_n", "row falls", "RASf"),
         ("ras_n", "row rises", "RASr"),
@@ -319,6 +321,7 @@ def _whatever(facts: Facts, chip: Chip) -> Scene:
         ("ma", "column selected", "row address ends"),
         ("ma", "column selected", "column address"),
         ("ma", "address released", "column address ends"),
+        ("ma", "address frozen", "row address"),
     ):
         drive(network, facts, net, edge, event)
     next_access(network, facts, write=False)
