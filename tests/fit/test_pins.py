@@ -1,10 +1,14 @@
 """The pin table."""
 
 from collections import Counter
+from pathlib import Path
 
 from fit.boards import PORTS, board, nets
 from rowkeeper.fit.pins import path_text, pin_rows
+from rowkeeper.reading import read_board
 from rowkeeper.reading.board import PathElement
+
+LOOM = Path(__file__).parents[2] / "boards" / "loom-16k.yaml"
 
 
 def test_every_pin_of_the_package_has_one_row_in_order() -> None:
@@ -39,7 +43,17 @@ def test_a_row_says_what_the_pin_meets_and_through_what() -> None:
     assert (row.pin, row.function, row.direction) == ("51", "IOR_52", "output")
     assert row.meets == wired.meets
     assert row.through == "U22 SN74AHCT541 at 5 V, 33 ohm, load 90 pF"
-    assert row.level == "high from 2.74 V, low to 0.4 V"
+    assert row.level == "gives 2.74 / 0.4 V"
+
+
+def test_level_names_both_ends() -> None:
+    """The device's pin and what stands at the other end: the bus, the chips, the part that is enabled."""
+    levels = {row.net: row.level for row in pin_rows(read_board(LOOM), PORTS)}
+    assert levels["mreq_n"] == "asks 2 / 0.8 V; bus gives 2.4 / 0.4 V"
+    assert levels["ras_n"] == "gives 2.74 / 0.4 V; chip asks 2.7 / 0.8 V"
+    assert levels["ma0"] == "gives 2.74 / 0.4 V; chip asks 2.4 / 0.8 V"
+    assert levels["enable_n"] == "gives 2.74 / 0.4 V; U22 asks 2 / 0.8 V"
+    assert levels["clk"] == "asks 2 / 0.8 V"
 
 
 def test_pins_without_a_net_say_what_to_do_with_them() -> None:

@@ -3,7 +3,7 @@
 from dataclasses import replace
 
 from rowkeeper.contract import Finding, Note, Status, Verdict
-from rowkeeper.reading.board import Board, Net, PathElement
+from rowkeeper.reading.board import Board, IoLevels, Net, PathElement
 from rowkeeper.sheets.facts import NOT_PROVEN, PathRow, SheetFacts, board_stamp, sheet_facts
 from rowkeeper.sheets.stamp import Stamp
 from sheets.boards import BOARD, BUFFER, CHIP
@@ -63,8 +63,9 @@ def test_three_supply_chips_want_the_negative_one_first() -> None:
     """Common practice with three-supply parts: the substrate bias is first on and last off."""
     order = _facts().order
     (step,) = [step for step in order if "FIRST" in step]
-    assert step == "Three-supply chips: VBB -4.5 to -5.5 V comes on FIRST and goes off LAST, every time."
-    assert order.index(step) < min(place for place, text in enumerate(order) if "Switch on" in text)
+    assert step.startswith("Three-supply chips: VBB -4.5 to -5.5 V comes on FIRST and goes off LAST, every time.")
+    assert "together with VDD, VCC" in step
+    assert order.index(step) < min(place for place, text in enumerate(order) if "switch on and measure" in text)
 
 
 def test_single_supply_chips_have_no_such_step() -> None:
@@ -77,10 +78,10 @@ def test_single_supply_chips_have_no_such_step() -> None:
 def test_chips_are_out_for_the_first_power_up() -> None:
     """They are fitted after the rails were measured, with supplies off."""
     order = _facts().order
-    measured = next(place for place, text in enumerate(order) if text.startswith("Memory chips out."))
+    measured = next(place for place, text in enumerate(order) if "without memory chips: switch on" in text)
     fitted = next(place for place, text in enumerate(order) if "Fit the memory chips" in text)
     assert measured < fitted
-    assert order[fitted].startswith("Supplies off.")
+    assert order[fitted].startswith("Supplies off and measured off.")
 
 
 def test_assumptions_of_the_bus_are_listed() -> None:
@@ -102,6 +103,29 @@ def test_notes_are_cut_to_what_a_sheet_has_room_for() -> None:
     assert first.endswith("tRC tRC ... (1 more of this kind)")
     assert len(first) < 250
     assert second == "other: short"
+
+
+def test_notes_end_with_a_sentence() -> None:
+    """What does not fit is left out from a sentence's end on, or from a semicolon; margins.txt has the whole."""
+    notes = [Note("one", "It is so. " + "word " * 60), Note("two", "a clause; " + "word " * 60)]
+    assert sheet_facts(BOARD, "0.1.0", pin_rows(), PASSED, notes).notes == ("one: It is so.", "two: a clause.")
+
+
+def test_data_line_without_margin_is_to_know() -> None:
+    """2.4 V promised by the bus (Z8400 specification), 2.4 V asked by the chips (MK4116 sheet, p. 2)."""
+    levels = IoLevels(2400, 800, 2400, 400, 5250, BOARD.bus.source)
+    chip = replace(CHIP, address_levels=levels)
+    nets = (Net("data_in", "path", "", "U10-U17.2", (PathElement("direct", rail_mv=5000),)),)
+    board = replace(
+        BOARD,
+        bus=replace(BOARD.bus, output_levels=levels),
+        banks=(replace(BOARD.banks[0], chip=chip),),
+        wiring=replace(BOARD.wiring, nets=nets),
+    )
+    assert _facts(board).notes[0] == (
+        "data in: the bus promises a high of 2.4 V and the chips ask for 2.4 V: no margin by the book. Measure it."
+    )
+    assert not _facts().notes[0].startswith("data in")
 
 
 def test_what_did_not_run_is_on_the_sheet() -> None:

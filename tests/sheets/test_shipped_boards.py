@@ -1,4 +1,4 @@
-"""The sheets of the shipped boards: every pin, two printed pages."""
+"""The sheets of the shipped boards: every pin, three printed pages: the package, the wires, the work."""
 
 import re
 import shutil
@@ -41,13 +41,31 @@ def test_three_supplies_or_one(path: Path) -> None:
     assert any("-" in name for name in supplies) == any("FIRST" in step for step in _facts(path).order)
 
 
+@pytest.mark.parametrize("path", BOARDS, ids=lambda path: path.stem)
+def test_every_wire_has_a_channel(path: Path) -> None:
+    """Each net that passes a part stands in that part's table, on pins of its own, between bus and device."""
+    facts = _facts(path)
+    tables = {table.designator: table for table in facts.packages}
+    for row in facts.pins:
+        place = row.through.partition(" ")[0]
+        if place not in tables:
+            continue
+        label = "/" + row.net[:-2].upper() if row.net.endswith("_n") else row.net.upper()
+        (channel,) = [c for c in tables[place].channels if c.net == label]
+        ends = (channel.source, channel.target.rpartition("> ")[2])
+        assert ends == ((row.meets, f"pin {row.pin}") if row.direction == "input" else (f"pin {row.pin}", row.meets))
+    pins = [(t.designator, pin) for t in facts.packages for c in t.channels for pin in (c.input_pin, c.output_pin)]
+    assert len(pins) == len(set(pins))
+    assert not [pin for _, pin in pins if pin == "?"]
+
+
 @pytest.mark.slow
 @pytest.mark.skipif(shutil.which("chromium") is None, reason="no browser that prints")
 @pytest.mark.parametrize("path", BOARDS, ids=lambda path: path.stem)
-def test_prints_on_two_pages(path: Path, tmp_path: Path) -> None:
+def test_prints_on_three_pages(path: Path, tmp_path: Path) -> None:
     """What a browser makes of it on A4."""
     page, printed = tmp_path / "sheet.html", tmp_path / "sheet.pdf"
     page.write_text(sheet_html(_facts(path)), encoding="utf-8")
     options = ["--headless", "--no-sandbox", "--disable-gpu", "--no-pdf-header-footer", f"--print-to-pdf={printed}"]
     subprocess.run(["chromium", *options, page.as_uri()], check=True, capture_output=True, timeout=120)
-    assert len(re.findall(rb"/Type\s*/Page\b", printed.read_bytes())) == 2
+    assert len(re.findall(rb"/Type\s*/Page\b", printed.read_bytes())) == 3

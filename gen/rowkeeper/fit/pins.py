@@ -21,7 +21,7 @@ _WITHOUT_NET = {
     "none": ("open", "leave open"),
 }
 _CONFIGURATION = {
-    "CDONE": "high when configured; pull-up, may drive a lamp",
+    "CDONE": "high when configured; 10 kohm pull-up, a lamp only through a transistor",
     "CRESET_B": "10 kohm pull-up; low starts configuration again",
     "SDO": "to the flash's data in",
     "SDI": "to the flash's data out",
@@ -35,7 +35,7 @@ def pin_rows(board: Board, ports: Ports) -> tuple[PinRow, ...]:
     nets = {net.pin: net for net in board.wiring.nets if net.pin}
     bits = {bit.net: bit for bit in ports.bits}
     pins = sorted(board.device.pins.values(), key=_pin_order)
-    return tuple(_row(board.device, pin, nets.get(pin.number), bits) for pin in pins)
+    return tuple(_row(board, pin, nets.get(pin.number), bits) for pin in pins)
 
 
 def _pin_order(pin: DevicePin) -> tuple[int, int, str]:
@@ -43,10 +43,11 @@ def _pin_order(pin: DevicePin) -> tuple[int, int, str]:
     return (0, int(pin.number), "") if pin.number.isdecimal() else (1, 0, pin.number)
 
 
-def _row(device: Device, pin: DevicePin, net: Net | None, bits: dict[str, PortBit]) -> PinRow:
+def _row(board: Board, pin: DevicePin, net: Net | None, bits: dict[str, PortBit]) -> PinRow:
+    device = board.device
     if net is not None and net.name in bits:
         direction = bits[net.name].direction
-        level = _level(device.levels, direction)
+        level = _level(device.levels, direction, *_other_end(board, net))
         note = f"drives the whole logic, {pin.name.rsplit('_', 1)[-1]}" if net.name == "clk" else ""
         return PinRow(pin.number, pin.name, net.name, direction, level, net.meets, path_text(net.through), note)
     if pin.role == "config":
@@ -56,13 +57,48 @@ def _row(device: Device, pin: DevicePin, net: Net | None, bits: dict[str, PortBi
     return PinRow(pin.number, pin.name, "", use, level, "", "", note)
 
 
-def _level(levels: IoLevels, direction: str) -> str:
-    high, low = (
-        (levels.vih_min_mv, levels.vil_max_mv) if direction == "input" else (levels.voh_min_mv, levels.vol_max_mv)
-    )
-    parts = [f"high from {_volts(high)}"] if high is not None else []
-    parts += [f"low to {_volts(low)}"] if low is not None else []
-    return ", ".join(parts)
+def _level(levels: IoLevels, direction: str, other: str, beyond: IoLevels | None) -> str:
+    """High and low at both ends: the device's pin, and who drives it or whom it drives in the end."""
+    pin, far = (_asked, _given) if direction == "input" else (_given, _asked)
+    parts = [pin(levels), far(beyond, other) if beyond is not None else ""]
+    return "; ".join(part for part in parts if part)
+
+
+def _asked(levels: IoLevels, who: str = "") -> str:
+    return _both(f"{who} asks", levels.vih_min_mv, levels.vil_max_mv)
+
+
+def _given(levels: IoLevels, who: str = "") -> str:
+    return _both(f"{who} gives", levels.voh_min_mv, levels.vol_max_mv)
+
+
+def _both(what: str, high: int | None, low: int | None) -> str:
+    if high is None or low is None:
+        return ""
+    return f"{what} {_decimal(high, 1000)} / {_volts(low)}".strip()
+
+
+def _other_end(board: Board, net: Net) -> tuple[str, IoLevels | None]:
+    """Who stands at the end of the net that is not the device."""
+    if net.name == "clk":
+        return "", None
+    if net.side == "input":
+        return "bus", board.bus.output_levels
+    strobe = net.name in ("ras_n", "cas_n", "we_n")
+    if not strobe and not net.name.startswith("ma"):
+        return _enabled(board, net)
+    chip = board.banks[0].chip if board.banks else None
+    if chip is None:
+        return "", None
+    return "chip", chip.strobe_levels if strobe else chip.address_levels
+
+
+def _enabled(board: Board, net: Net) -> tuple[str, IoLevels | None]:
+    """The part whose enable this net meets, where the board file has that part on a net."""
+    place = net.meets.partition(".")[0].partition("-")[0]
+    elements = (element for other in board.wiring.nets for element in other.through)
+    part = next((e.part for e in elements if e.part is not None and e.designator == place), None)
+    return (place, part.input_levels) if part is not None else ("", None)
 
 
 def _supply(device: Device, pin: DevicePin) -> str:

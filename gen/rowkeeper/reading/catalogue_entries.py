@@ -270,7 +270,9 @@ def _part_pins(file: Section, sources: dict[str, Source]) -> PartPins | None:
     channels = _number(file, "channels")
     if section.whole and not len(inputs) == len(outputs) == channels:
         problems.add(
-            section.at, f"{len(inputs)} inputs and {len(outputs)} outputs for {channels} channels", "name a pair for each"
+            section.at,
+            f"{len(inputs)} inputs and {len(outputs)} outputs for {channels} channels",
+            "name a pair for each",
         )
     numbers = [*inputs, *outputs, *(pin.pin for pin in fixed)]
     twice = next((number for number in numbers if numbers.count(number) > 1), None)

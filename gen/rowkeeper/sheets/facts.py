@@ -4,13 +4,14 @@ Takes a board, its pin rows, the verdict and the notes of a run; gives `SheetFac
 out, nor how any of it was found.
 """
 
-import re
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from fractions import Fraction
 
 from rowkeeper.contract import Finding, Note, PinRow, Status, Verdict
 from rowkeeper.reading.board import Bank, Board, Net, PathElement
+from rowkeeper.sheets.channels import PackageTable, package_tables
+from rowkeeper.sheets.order import order_of_work
 from rowkeeper.sheets.outcome_tables import verdict_line
 from rowkeeper.sheets.plain import net_label, one_line
 from rowkeeper.sheets.quantities import bytes_text, decimal, frequency, hexadecimal, volts
@@ -32,7 +33,6 @@ NOT_PROVEN = (
 
 _OPEN_SHOWN = 8
 _NOTE_LETTERS = 210
-_NEGATIVE = re.compile(r"(?:^|\s)[-\N{MINUS SIGN}]\s?\d")
 
 
 @dataclass(frozen=True, slots=True)
@@ -71,6 +71,7 @@ class SheetFacts:
     not_proven: tuple[str, ...]
     open_items: tuple[str, ...]
     notes: tuple[str, ...]
+    packages: tuple[PackageTable, ...] = ()
 
 
 def board_stamp(board: Board, version: str) -> Stamp:
@@ -79,9 +80,14 @@ def board_stamp(board: Board, version: str) -> Stamp:
 
 
 def sheet_facts(
-    board: Board, version: str, pins: Sequence[PinRow], verdict: Verdict, notes: Iterable[Note] = ()
+    board: Board,
+    version: str,
+    pins: Sequence[PinRow],
+    verdict: Verdict,
+    notes: Iterable[Note] = (),
+    program_sha256: str = "",
 ) -> SheetFacts:
-    """Everything the sheet says of one board after one run."""
+    """Everything the sheet says of one board after one run. `program_sha256`: of the programming file, if known."""
     return SheetFacts(
         board_name=one_line(board.name),
         revision=one_line(board.revision),
@@ -100,12 +106,13 @@ def sheet_facts(
         keep=_lines(board.wiring.keep),
         add=_lines(board.wiring.add),
         handling=HANDLING,
-        order=_order(board),
+        order=order_of_work(board, program_sha256),
         chips=_chip_notes(board),
         assumed=_lines(board.bus.assumptions.values()),
         not_proven=NOT_PROVEN,
         open_items=_open_items(verdict.findings),
-        notes=_short_notes(notes),
+        notes=(*_data_margin(board), *_short_notes(notes)),
+        packages=package_tables(board),
     )
 
 
@@ -122,10 +129,37 @@ def _short_notes(notes: Iterable[Note]) -> tuple[str, ...]:
 
 
 def _short(topic: str, texts: Sequence[str]) -> str:
-    whole = one_line(f"{topic}: {texts[0]}")
-    short = whole if len(whole) <= _NOTE_LETTERS else whole[:_NOTE_LETTERS].rpartition(" ")[0].rstrip(",;") + " ..."
     more = f" ({len(texts) - 1} more of this kind)" if len(texts) > 1 else ""
-    return f"{short}{more}"
+    return f"{_whole_sentences(one_line(f'{topic}: {texts[0]}'))}{more}"
+
+
+def _whole_sentences(text: str) -> str:
+    """As many sentences as there is room for; one that alone is too long ends at a word, and shows it."""
+    if len(text) <= _NOTE_LETTERS:
+        return text
+    ends = [place + 1 for place in range(len(text) - 1) if text[place] == "." and text[place + 1] == " "]
+    fitting = [end for end in ends if end <= _NOTE_LETTERS]
+    if fitting:
+        return text[: fitting[-1]]
+    clauses = [place for place in range(_NOTE_LETTERS) if text[place] == ";"]
+    if clauses:
+        return text[: clauses[-1]] + "."
+    return text[:_NOTE_LETTERS].rpartition(" ")[0].rstrip(",;") + " ..."
+
+
+def _data_margin(board: Board) -> tuple[str, ...]:
+    """A data line straight from the bus to the chips: its high level by the book, where nothing is to spare."""
+    straight = any(
+        net.name == "data_in" and all(element.part is None for element in net.through) for net in board.wiring.nets
+    )
+    gives = board.bus.output_levels.voh_min_mv
+    asks = max((bank.chip.address_levels.vih_min_mv or 0 for bank in board.banks), default=0)
+    if not straight or gives is None or gives > asks:
+        return ()
+    return (
+        f"data in: the bus promises a high of {volts(gives)} and the chips ask for {volts(asks)}: no margin by the"
+        " book. Measure it.",
+    )
 
 
 def _open_items(findings: Iterable[Finding]) -> tuple[str, ...]:
@@ -190,23 +224,3 @@ HANDLING = (
     "All supplies off, and measured off, whenever a part is fitted, pulled or soldered.",
     "Never 5 V into a 3.3 V pin: every line from the board passes its translator first.",
 )
-
-
-def _order(board: Board) -> tuple[str, ...]:
-    """The order of work up to the first switch-on, by the supplies of the chips."""
-    supplies = tuple(dict.fromkeys(name for bank in board.banks for name in bank.chip.supplies))
-    negative = [one_line(name) for name in supplies if _NEGATIVE.search(name)]
-    listed = ", ".join(map(one_line, supplies))
-    rails = f"Memory chips out. Switch on and measure each supply at the sockets ({listed}), then at the device."
-    steps = [
-        "Programme the flash; compare its checksum with the manifest.",
-        "Remove, keep and add parts as listed. Check each wire against the pin table, one tick per wire.",
-        "With supplies off, measure that no supply is shorted to ground or to another supply.",
-        rails,
-        "Still without chips: measure that /RAS, /CAS and /WE stand high while the device is being configured.",
-        "Supplies off. Fit the memory chips, notch to pin 1 mark.",
-    ]
-    if len(supplies) > 1 and negative:
-        steps.insert(3, f"Three-supply chips: {', '.join(negative)} comes on FIRST and goes off LAST, every time.")
-    steps.append("Switch on. Test in the machine at full speed, with a pause longer than the refresh interval.")
-    return tuple(steps)

@@ -63,12 +63,18 @@ def sheet_html(facts: SheetFacts) -> str:
 
 def _pages(facts: SheetFacts, rows: int, fixed: int) -> int:
     """Two pages, or three where the texts would run over the foot of the second. Tenths of a millimetre, measured."""
-    room = 2570 - 35 * rows - 14 * (fixed + 1)
+    room = 2570 - 35 * rows - 14 * (fixed + 1) - _packages_height(facts)
     texts = (facts.order, facts.chips, facts.assumed, (*facts.open_items, *facts.not_proven), facts.notes)
     lines = sum(-(-len(item) // _LETTERS_A_LINE) for items in texts for item in items)
     spaces = sum(len(items) for items in texts)
     needed = (29 * lines + 4 * spaces + 60 * len(texts)) // _TEXT_COLUMNS
     return 2 if needed <= room else 3
+
+
+def _packages_height(facts: SheetFacts) -> int:
+    """What the tables of the packages take, in tenths of a millimetre."""
+    lines = sum(len(package.channels) + 7 for package in facts.packages)
+    return 32 * lines // _TEXT_COLUMNS
 
 
 def _environment() -> Environment:
