@@ -61,7 +61,10 @@ def _limits(limits: Sequence[OriginalLimit]) -> list[str]:
     ]
     headings = ("limit", "what", "required", "original", "margin", "replacement", "margin")
     notes = dict.fromkeys(f"{limit.symbol} {limit.sense}: {limit.note}" for limit in limits if limit.note)
-    key = "A margin below zero was never promised by the sheets: the old board lived on what usual parts do."
+    key = (
+        "Where the original's margin is below zero, or none, the sheets never promised it: the old board lived on what "
+        "usual parts do. (ref) a reference point of the sheet, not a limit."
+    )
     return [
         "Limit by limit, in ns:",
         *table(headings, rows, right=(2, 4, 6)),
