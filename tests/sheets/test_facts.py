@@ -108,7 +108,9 @@ def test_notes_are_cut_to_what_a_sheet_has_room_for() -> None:
 def test_notes_end_with_a_sentence() -> None:
     """What does not fit is left out from a sentence's end on, or from a semicolon; margins.txt has the whole."""
     notes = [Note("one", "It is so. " + "word " * 60), Note("two", "a clause; " + "word " * 60)]
-    assert sheet_facts(BOARD, "0.1.0", pin_rows(), PASSED, notes).notes == ("one: It is so.", "two: a clause.")
+    notes += [Note("list", "one, two, " + "three " * 60)]
+    expected = ("one: It is so.", "two: a clause.", "list: one, two and more.")
+    assert expected == sheet_facts(BOARD, "0.1.0", pin_rows(), PASSED, notes).notes
 
 
 def test_data_line_without_margin_is_to_know() -> None:

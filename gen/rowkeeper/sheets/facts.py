@@ -134,7 +134,7 @@ def _short(topic: str, texts: Sequence[str]) -> str:
 
 
 def _whole_sentences(text: str) -> str:
-    """As many sentences as there is room for; one that alone is too long ends at a word, and shows it."""
+    """As many sentences as there is room for; a long list ends with `and more`, any other text with three dots."""
     if len(text) <= _NOTE_LETTERS:
         return text
     ends = [place + 1 for place in range(len(text) - 1) if text[place] == "." and text[place + 1] == " "]
@@ -144,7 +144,8 @@ def _whole_sentences(text: str) -> str:
     clauses = [place for place in range(_NOTE_LETTERS) if text[place] == ";"]
     if clauses:
         return text[: clauses[-1]] + "."
-    return text[:_NOTE_LETTERS].rpartition(" ")[0].rstrip(",;") + " ..."
+    listed = text[:_NOTE_LETTERS].rpartition(", ")[0]
+    return f"{listed} and more." if listed else text[:_NOTE_LETTERS].rpartition(" ")[0] + " ..."
 
 
 def _data_margin(board: Board) -> tuple[str, ...]:
@@ -163,7 +164,7 @@ def _data_margin(board: Board) -> tuple[str, ...]:
 
 
 def _open_items(findings: Iterable[Finding]) -> tuple[str, ...]:
-    """What failed or did not run; a long list is cut with a count, so that the sheet stays two pages."""
+    """What failed or did not run; a long list is cut with a count, so that the sheet keeps its pages."""
     items = tuple(_open(finding) for finding in findings if finding.status is not Status.PASSED)
     rest = len(items) - _OPEN_SHOWN
     return items if rest <= 0 else (*items[:_OPEN_SHOWN], f"and {rest} more in verdict.json")
