@@ -3,6 +3,7 @@
 Takes finished `Work` and its verdict; gives every file of `out/<board>/`. Must not know how to write it.
 """
 
+import hashlib
 from collections.abc import Mapping
 
 from rowkeeper import __version__
@@ -65,7 +66,15 @@ def stamped_logic(work: Work) -> str:
 
 def _sheets(work: Work, verdict: Verdict) -> dict[str, bytes]:
     pins = pin_rows(work.board, ports_of(work.design))
-    facts = sheet_facts(work.board, __version__, pins, verdict, (*work.plan.notes, _power_up_note(work)))
+    program = work.fit.programming if work.fit is not None else b""
+    facts = sheet_facts(
+        work.board,
+        __version__,
+        pins,
+        verdict,
+        (*work.plan.notes, _power_up_note(work)),
+        program_sha256=hashlib.sha256(program).hexdigest() if program else "",
+    )
     return {"pins.csv": pins_csv(pins).encode(), "sheet.html": sheet_html(facts).encode()}
 
 

@@ -11,7 +11,7 @@ from rowkeeper.contract import Verdict
 from rowkeeper.reading import read_board
 from rowkeeper.run.artefacts import artefacts, sheet_artefacts
 from rowkeeper.run.commands import Answer, refused_text
-from rowkeeper.run.output import write_all
+from rowkeeper.run.output import write_all, write_text
 from rowkeeper.run.pipeline import Work, benched, fitted, planned, proved, verdict
 from rowkeeper.run.progress import EXPECTED_S, Progress
 from rowkeeper.sheets.facts import board_stamp
@@ -78,7 +78,7 @@ def simulate(
     work = benched(work, progress, seed, chosen, icarus)
     found = verdict(work, ("fit", "bench") if netlist else ("bench",))
     if junit is not None:
-        junit.write_text(junit_xml(board_stamp(work.board, __version__), found), encoding="utf-8")
+        write_text(junit, junit_xml(board_stamp(work.board, __version__), found))
     return _judged(work, found, as_json)
 
 

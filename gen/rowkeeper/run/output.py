@@ -10,7 +10,7 @@ import tempfile
 from collections.abc import Mapping
 from pathlib import Path, PurePosixPath
 
-__all__ = ["OutputRefused", "UnknownNameError", "write_all"]
+__all__ = ["OutputRefused", "UnknownNameError", "write_all", "write_text"]
 
 
 class OutputRefused(Exception):
@@ -43,6 +43,14 @@ def write_all(folder: Path, files: Mapping[str, bytes]) -> None:
         raise OutputRefused(f"cannot write {folder}: {error.strerror}") from None
     finally:
         shutil.rmtree(fresh, ignore_errors=True)
+
+
+def write_text(path: Path, text: str) -> None:
+    """One file that was asked for by name. Raises OutputRefused."""
+    try:
+        path.write_text(text, encoding="utf-8")
+    except OSError as error:
+        raise OutputRefused(f"cannot write {path}: {error.strerror}") from None
 
 
 def _ours(folder: Path) -> bool:

@@ -14,12 +14,14 @@ from rowkeeper.contract import (
     ClaimOutcome,
     Delays,
     Design,
+    Finding,
     FitOutcome,
     Plan,
     Status,
     Verdict,
 )
 from rowkeeper.fit.fitting import fit
+from rowkeeper.fit.power_up import power_up
 from rowkeeper.judging.bench.compiled import BuildError, CompiledBench, build
 from rowkeeper.judging.bench.icarus import agree, build_icarus
 from rowkeeper.judging.bench.outcome import not_run
@@ -174,18 +176,20 @@ def _icarus(work: Work, seed: int, progress: Progress) -> list[BenchOutcome]:
     return outcomes
 
 
+def _power_up(work: Work) -> list[Finding]:
+    """A typical configuration time can show that power-up takes too long, never that it is short enough."""
+    found = power_up(work.board, work.plan.ticks)
+    return [Finding("fit", "power to valid strobes", Status.FAILED, found.remark)] if found.exceeds else []
+
+
 def verdict(work: Work, expected: tuple[str, ...]) -> Verdict:
     """Everything found, and what was asked for and gave nothing. `expected`: groups that must be there."""
     findings = [*plan_findings(work.plan, routed_wanted="fit" in expected), *level_findings(levels_of(work.board))]
     if work.fit is not None:
         findings += fit_findings(work.fit)
+        findings += _power_up(work)
     findings += claim_findings(work.claims)
     findings += bench_findings(work.bench)
     groups = {finding.group for finding in findings}
     missing = [(group, f"every {group}") for group in expected if group not in groups]
     return verdict_of(findings, missing)  # type: ignore[arg-type]
-
-
-def passed(work: Work) -> bool:
-    """Whether the plan itself holds: nothing after it is worth doing otherwise."""
-    return work.plan.holds and (work.fit is None or work.fit.status is Status.PASSED)
