@@ -15,7 +15,7 @@ import z3
 
 from rowkeeper.contract import TickTable
 from rowkeeper.timing import scenes as scenes_room
-from rowkeeper.timing.arbitration import arbitration
+from rowkeeper.timing.arbitration import leaning_events, spare_by_notice
 from rowkeeper.timing.device import Facts, counted, with_ticks
 from rowkeeper.timing.limits import Rule, rules_of
 from rowkeeper.timing.margins import judged
@@ -213,11 +213,10 @@ def margins_of(facts: Facts) -> dict[tuple[str, ...], set[Case]]:
                     neighbour = scene.neighbour if rule.later.startswith("next ") else ""
                     key = (rule.symbol, scene.cycle, neighbour, rule.sense, rule.earlier, rule.later)
                     found.setdefault(key, set()).add(case)
-    for one in arbitration(facts):
-        slopes = tuple(-facts.tick_hi_ps if n in ("row_setup", "refresh_low", "precharge") else 0 for n in TICKS)
-        plain = one.margin_ps - sum(t.used_ps for t in one.available if t.name.startswith("set-up the bus"))
-        at = tuple(getattr(facts.ticks, name) for name in TICKS)
-        found["arbitration", one.event] = {Case(((plain - value((0, slopes), at), slopes),), (), NEVER)}
+    at = tuple(getattr(facts.ticks, name) for name in TICKS)
+    slopes = tuple(-facts.tick_hi_ps if n in ("row_setup", "refresh_low", "precharge") else 0 for n in TICKS)
+    for event, left in sums_of(facts, facts.ticks):
+        found["arbitration", event] = {Case(((left - value((0, slopes), at), slopes),), (), NEVER)}
     return found
 
 
@@ -307,14 +306,23 @@ class Question:
             self.solver.add(z3.Or([self.ticks[i] < at[i] for i in growing]))
 
 
+def sums_of(facts: Facts, table: TickTable) -> list[tuple[str, int]]:
+    """The sums of arbitration at a table, with the bus's own set-up where those of `facts` need it.
+
+    A sum that does not hold at the ticks of `facts` either way is refused by the plan, and no margin.
+    """
+    leaning = leaning_events(facts)
+    now, then = (
+        {one.events[0]: one.margin.margin_ps for one in spare_by_notice(with_ticks(facts, ticks), leaning)}
+        for ticks in (facts.ticks, table)
+    )
+    return [(event, then[event]) for event, left in now.items() if left >= 0]
+
+
 def worst_margins(facts: Facts, table: TickTable) -> tuple[int, ...]:
     """The sorted vector of a table, judged by the tool: hard margins and the sums of arbitration."""
-    now = with_ticks(facts, table)
-    sums = [
-        max(one.margin_ps - sum(t.used_ps for t in one.available if t.name.startswith("set-up the bus")), HOPELESS)
-        for one in arbitration(now)
-    ]
-    return tuple(sorted([*sorted_margins(judged(now)), *sums]))
+    sums = [max(left, HOPELESS) for _, left in sums_of(facts, table)]
+    return tuple(sorted([*sorted_margins(judged(with_ticks(facts, table))), *sums]))
 
 
 def open_and_judged(facts: Facts, tables: Iterable[TickTable]) -> Iterator[tuple[list[int], list[int]]]:

@@ -4,6 +4,8 @@ Takes `Facts`; gives the sums for the end of a grant and of a reset. BUSREQ and 
 that is the notice. A line that is not wired gives none. Must not know how ticks are chosen.
 """
 
+from collections.abc import Collection
+
 from rowkeeper.contract import ArbitrationSum, Note, Term
 from rowkeeper.reading.figures import Figure, Mark, Source
 from rowkeeper.timing.bus import from_figure
@@ -11,7 +13,7 @@ from rowkeeper.timing.device import SYNCHRONISER, Facts, counted
 from rowkeeper.timing.margins import Judged, spare
 from rowkeeper.timing.network import UNPUBLISHED, Promise
 
-__all__ = ["arbitration", "arbitration_notes", "own_refresh_can_be_seen", "spare_by_notice", "wired"]
+__all__ = ["arbitration", "arbitration_notes", "leaning_events", "own_refresh_can_be_seen", "spare_by_notice", "wired"]
 
 # BUSREQ, BUSACK and RESET are driven edges: the translators' sheet asks 10 ns/V (SCAS218T), and two receivers may each
 # switch anywhere from 0.8 to 2.0 V.
@@ -19,6 +21,7 @@ _EDGE = Term(
     "edge of the line, 0.8 to 2.0 V", 0, 12_000, 12_000, Source(Mark.PRACTICE, "a driven edge of 10 ns/V, no RC")
 )
 _SETUP = "set-up the bus asks of this line"
+_GRANT = "end of a grant"
 _SPANS = ("row_setup", "refresh_low", "precharge")
 
 
@@ -86,7 +89,7 @@ def _clocks(facts: Facts, count: int) -> list[Term]:
 def _end_of_grant(facts: Facts) -> ArbitrationSum:
     """BUSREQ is taken high at a Cr; the next T1 begins a clock later. Else BUSACK rises half a clock before T1."""
     figures = facts.board.grade.figures
-    event = "end of a grant"
+    event = _GRANT
     if wired(facts, "busreq_n"):
         return _with_notice(facts, event, "BUSREQ rising", "busreq_n", 1, figures.get("TsBUSREQ"))
     if not wired(facts, "busack_n"):
@@ -130,14 +133,29 @@ def _sum(event: str, notice: str, available: list[Term], needed: list[Term]) -> 
     return ArbitrationSum(event, notice, tuple(available), tuple(needed), margin)
 
 
-def spare_by_notice(facts: Facts) -> list[Judged]:
-    """What each sum leaves when the bus's own set-up is not counted."""
+def spare_by_notice(facts: Facts, leaning: Collection[str] = ()) -> list[Judged]:
+    """What each sum leaves when the bus's own set-up is not counted; it is counted for the events in `leaning`."""
     per_tick = dict.fromkeys(_SPANS, -facts.tick_hi_ps)
     found: list[Judged] = []
     for one in arbitration(facts):
-        plain = one.margin_ps - sum(t.used_ps for t in one.available if t.name == _SETUP)
-        found.append(spare("arbitration", one.event, plain, per_tick, facts.tick_source))
+        left = one.margin_ps - sum(t.used_ps for t in one.available if t.name == _SETUP)
+        if one.event in leaning:
+            left += _setup_ps(facts, one.event)
+        found.append(spare("arbitration", one.event, left, per_tick, facts.tick_source))
     return found
+
+
+def leaning_events(facts: Facts) -> frozenset[str]:
+    """Events whose sum holds with the bus's own set-up and not without it."""
+    plain = {one.events[0]: one.margin.margin_ps for one in spare_by_notice(facts)}
+    return frozenset(event for event, left in plain.items() if left < 0 <= left + _setup_ps(facts, event))
+
+
+def _setup_ps(facts: Facts, event: str) -> int:
+    net, symbol = ("busreq_n", "TsBUSREQ") if event == _GRANT else ("reset_n", "TsRESET")
+    figure = facts.board.grade.figures.get(symbol)
+    asked = wired(facts, net) and (event == _GRANT or facts.board.at_worst.reset_aligned)
+    return (figure.lo_ps or 0) if asked and figure is not None else 0
 
 
 def arbitration_notes(facts: Facts, sums: tuple[ArbitrationSum, ...], forced_unused: bool) -> list[Note]:

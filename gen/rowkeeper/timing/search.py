@@ -12,7 +12,7 @@ from dataclasses import dataclass, field, replace
 
 from rowkeeper.contract import TickTable
 from rowkeeper.reading.board import Chip, GivenTicks
-from rowkeeper.timing.arbitration import spare_by_notice
+from rowkeeper.timing.arbitration import leaning_events, spare_by_notice
 from rowkeeper.timing.device import Facts, with_ticks
 from rowkeeper.timing.margins import Judged, judged
 from rowkeeper.timing.refresh_bounds import spare_by_service
@@ -121,18 +121,23 @@ class _Goal:
     groups: list[Group]
     room: Callable[[tuple[int, ...]], int]
 
-    def worth(self, at: tuple[int, ...]) -> Worth:
+    def values(self, at: tuple[int, ...]) -> list[int]:
+        """Every margin that moves, worst first."""
         values: list[int] = []
         for group in self.groups:
             values += [_value(group, at)] * group[1]
-        return self.room(at), sorted(values), -sum(at)
+        values.sort()
+        return values
+
+    def worth(self, at: tuple[int, ...]) -> Worth:
+        return self.room(at), self.values(at), -sum(at)
 
     def beats(self, at: tuple[int, ...], best: Worth) -> Worth | None:
         """The worth of `at` where it is more than `best`; a margin below the worst of `best` ends it early."""
-        room = self.room(at)
-        if room < best[0]:
-            return None
-        least = best[1][0] if best[1] and room == best[0] else -_NEVER
+        if best[0] < 0:
+            worth = self.worth(at)
+            return worth if worth > best else None
+        least = best[1][0] if best[1] else -_NEVER
         values: list[int] = []
         for place, group in enumerate(self.groups):
             value = _value(group, at)
@@ -142,8 +147,8 @@ class _Goal:
                 return None
             values += [value] * group[1]
         values.sort()
-        worth = room, values, -sum(at)
-        return worth if worth > best else None
+        worth = 0, values, -sum(at)
+        return worth if worth > best and self.room(at) == 0 else None
 
     def about(self, i: int) -> "_Goal":
         """Margins that a tick does not move are the same on both sides of a comparison and fall out of it."""
@@ -205,12 +210,15 @@ def best_ticks(facts: Facts, given: GivenTicks) -> TickTable:
     ticks = first_guess(facts, given)
     lines = _Lines()
     # What even the shortest ticks cannot keep is refused; it does not take time away from the limits that can be kept.
-    kept = {one.events for one in spare_by_notice(with_ticks(facts, ticks)) if one.margin.margin_ps >= 0}
+    # A sum that only holds with the bus's own set-up is kept with it.
+    begin = with_ticks(facts, ticks)
+    leaning = leaning_events(begin)
+    kept = {one.events for one in spare_by_notice(begin, leaning) if one.margin.margin_ps >= 0}
     room = _room(facts, ticks)
     met: dict[TickTable, tuple[int, tuple[int, ...], int]] = {}
     for _ in range(_ROUNDS):
         now = with_ticks(facts, ticks)
-        found = [*judged(now), *(one for one in spare_by_notice(now) if one.events in kept)]
+        found = [*judged(now), *(one for one in spare_by_notice(now, leaning) if one.events in kept)]
         at = tuple(getattr(ticks, name) for name in _CHOSEN)
         met[ticks] = room(at), sorted_margins(found), -sum(at)
         lines.learn(ticks, found)
@@ -315,7 +323,7 @@ def _made_room(goal: _Goal, at: tuple[int, ...], payers: list[int]) -> tuple[int
         choices = [choice for choice in choices if choice[0] < choice[1]]
         if not choices:
             break
-        at = max(choices, key=lambda choice: goal.worth(choice)[1:])
+        at = max(choices, key=lambda choice: (goal.values(choice), -sum(choice)))
     return at
 
 
