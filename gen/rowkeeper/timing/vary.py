@@ -9,14 +9,10 @@ from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass, replace
 from fractions import Fraction
 
-from rowkeeper.contract import Plan, TickTable
+from rowkeeper.contract import Plan
 from rowkeeper.reading.board import Board, Chip
-from rowkeeper.timing.device import facts_of, with_ticks
-from rowkeeper.timing.margins import judged
 from rowkeeper.timing.paths import default_delays
-from rowkeeper.timing.plan import judge, settle
-from rowkeeper.timing.refresh_bounds import timer_ticks
-from rowkeeper.timing.search import patient
+from rowkeeper.timing.plan import settle
 
 __all__ = ["Point", "Reach", "Variation", "reach", "same_kind", "vary_chip", "vary_clock", "with_chip", "with_clock"]
 
@@ -167,14 +163,9 @@ def reach(board: Board, chips: Iterable[Chip], tell: Tell = _silent) -> Reach:
     )  # fmt: skip
 
 
-def _holds(board: Board, near: TickTable) -> bool:
-    """Whether any plan holds: one near the given ticks is tried first, because that is quick."""
-    delays = default_delays(board)
-    facts = facts_of(board, delays, near)
-    facts = with_ticks(facts, patient(facts, near, judged(facts)))
-    if judge(board, timer_ticks(facts).ticks, delays).holds:
-        return True
-    return settle(board, delays).holds
+def _holds(board: Board) -> bool:
+    """Whether the plan of this board holds, as `margins` would say of it."""
+    return settle(board, default_delays(board)).holds
 
 
 def _last(most: int, holds: Callable[[int], bool]) -> int:
@@ -192,7 +183,7 @@ def _least_clock(board: Board, own: Plan) -> Fraction | None:
     begin = board.bus_clock.frequency_hz
     steps = int((begin - _LEAST_CLOCK_HZ) // _CLOCK_STEP_HZ)
     return begin - _CLOCK_STEP_HZ * _last(
-        max(steps, 0), lambda count: _holds(with_clock(board, begin - _CLOCK_STEP_HZ * count), own.ticks)
+        max(steps, 0), lambda count: _holds(with_clock(board, begin - _CLOCK_STEP_HZ * count))
     )
 
 
@@ -203,7 +194,7 @@ def _most_wait(board: Board, own: Plan) -> tuple[int | None, bool]:
 
     def holds(clocks: int) -> bool:
         worst = replace(board.at_worst, wait_max_ps=begin + clocks * period)
-        return _holds(replace(board, at_worst=worst), own.ticks)
+        return _holds(replace(board, at_worst=worst))
 
     clocks = _last(_MOST_WAITS, holds)
     return begin + clocks * period, clocks == _MOST_WAITS
@@ -218,11 +209,11 @@ def _most_grant(board: Board, own: Plan) -> tuple[int | None, bool]:
     def with_grant(span_ps: int | None) -> Board:
         return replace(board, at_worst=replace(board.at_worst, grant_max_ps=span_ps))
 
-    if begin is None or _holds(with_grant(None), own.ticks):
+    if begin is None or _holds(with_grant(None)):
         return None, True
     steps = _last(
         (_MOST_GRANT_PS - begin) // _GRANT_STEP_PS,
-        lambda count: _holds(with_grant(begin + count * _GRANT_STEP_PS), own.ticks),
+        lambda count: _holds(with_grant(begin + count * _GRANT_STEP_PS)),
     )
     return begin + steps * _GRANT_STEP_PS, False
 
