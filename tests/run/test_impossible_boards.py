@@ -31,7 +31,9 @@ WORKED_OUT = [
     ("frequency: 100 MHz", "frequency: 50 MHz", "tCAC (opcode fetch)", "short"),
     ("chip: 4116-15", "chip: 4116-20", "tRAC (opcode fetch)", "short"),
     ("wait: {max: 0 ns}", "wait: {max: 12 us}", "tCAS (any access)", "too long"),
-    ("strobes: auto", "strobes: {mux: 2, column: 3}", "tRAH (any access)", "24.3 ns short"),
+    # 2 ticks of 9.999, 1.0 at least for the address; the row strobe 4.1 + 6.11 + 9.5 + 3.44 + 1.93 x 22 ohm x 90 pF at
+    # most: -5.97 ns where 20 are asked.
+    ("strobes: auto", "strobes: {mux: 2, column: 3}", "tRAH (any access)", "26.0 ns short"),
     ("strobes: auto", "strobes: {style: straight}", "strobe style straight", "counted"),
 ]
 
