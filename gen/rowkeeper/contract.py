@@ -68,7 +68,7 @@ class TickTable:
     write_lead: int  # write enable falls this long before the column strobe of a write
     give_up: int  # neither RD nor WR by then: the access ends as a row-only cycle
     column_cap: int  # the column strobe ends this long after it fell, whatever the bus does
-    column_rest: int  # column strobe high at least
+    column_rest: int  # column strobe high at least, before an access; before a refresh its row is set up meanwhile
     refresh_low: int  # row strobe low in a refresh
     precharge: int  # row strobe high at least, before it may fall again
     standby: int  # age at which a refresh of our own is wanted while the bus is quiet

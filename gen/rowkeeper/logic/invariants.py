@@ -68,7 +68,8 @@ class ProbeView(Replacement):
     def _registers(self) -> dict[str, Value]:
         s, w, k = self.sequencer, self.warm_up, self.cycle_kind
         shown: dict[str, Value] = {name: self._in(name) for name in _STATES}
-        shown |= {"step": s.step, "rest": s.rest, "served": s.served, "due": s.due, "granted": s.granted}
+        shown |= {"step": s.step, "rest": s.rest, "served": s.served, "taken": s.taken}
+        shown |= {"due": s.due, "granted": s.granted}
         shown |= {"refresh": k.refresh, "owed": k.owed, "fetched": k.fetched, "held": k.held}
         shown |= {"waited": w.waited, "rested": w.rested, "done": w.done, "ready": w.ready}
         shown |= {"age": self.refresh_timer.age, "quiet": self.quiet_bus.quiet, "follow": s.follow}
@@ -134,6 +135,8 @@ class ProbeView(Replacement):
             "warm_most": w.done <= t.warm_up_cycles,
             "warm_states": w.ready | self._in("idle", "preparing", "refreshing", "resting"),
             "busy_served": ~self._in("access", "reading", "writing", "holding", "preparing", "refreshing") | s.served,
+            "busy_taken": ~self._in("access", "reading", "writing", "preparing", "refreshing") | s.taken,
+            "taken": s.served | ~s.taken,
             "refresh_row": ~self._in("preparing", "refreshing") | (mux.memory_address == self.row_counter.row),
             "quiet_settled": self.quiet_bus.held <= t.reset_settle,
         }

@@ -7,10 +7,14 @@ begun runs its counted length. The states, and the tick at which each is left (e
     ACCESS   row strobe low; `mux` switches to the column; from `column` on a read or write may go ahead
     READ     column strobe low; after `row_hold` the row strobe rises
     WRITE    write enable low, `write_lead` later the column strobe; `row_hold` after that the row strobe rises
-    HOLD     column strobe alone keeps the data out; ends with the request, at `column_cap`, or for a due refresh
+    HOLD     column strobe alone keeps the data out; ends with the request and, in a read, with RD, whichever is later;
+             or at `column_cap`, for a due refresh, or for the bus's own refresh
     REST     precharge
     PREPARE  refresh row on the address outputs for `row_setup`
     REFRESH  row strobe low for `refresh_low`
+
+RD may rise so late after MREQ that the refresh that follows a fetch comes before the column strobe has rested. That
+refresh needs no address of the bus and begins with PREPARE, so it is taken from HOLD and REST as well.
 """
 
 from enum import IntEnum
@@ -71,6 +75,8 @@ class Sequencer(Component):
         self.step = Signal(range(longest + 1))  # ticks since the state was entered
         self.rest = Signal(range(ticks.precharge + 1))  # ticks since the row strobe rose, at most `precharge`
         self.served = Signal()  # the request on the bus has had what it gets, or came when its address was not captured
+        self.taken = Signal()  # the last request has had what it gets, and has not been seen to end
+        self.turn = Signal()  # a refresh of the bus may begin
 
     def elaborate(self, platform: object) -> Module:
         m = Module()
@@ -106,28 +112,42 @@ class Sequencer(Component):
             m.d.sync += self.rest.eq(self.rest + 1)
 
     def _requests(self, m: Module) -> None:
-        """A request is fresh only after its address was captured; what arrives out of turn is left alone."""
+        """An access is fresh only after its address was captured; what arrives out of turn is left alone."""
         between = (self.state == State.IDLE) | (self.state == State.REST)
-        m.d.comb += self.follow.eq(between & ~self.request_first & ~self.request)
+        silent = ~self.request_first & ~self.request
+        m.d.comb += self.follow.eq(between & silent)
         with m.If(self.follow):
             m.d.sync += self.served.eq(0)
         with m.Elif(self.request & (self.granted | ~self.ready)):
             m.d.sync += self.served.eq(1)
+        with m.If((between | (self.state == State.HOLD)) & silent):
+            m.d.sync += self.taken.eq(0)
+        with m.Elif(self.request & (self.granted | ~self.ready)):
+            m.d.sync += self.taken.eq(1)
+        rested = self.rest >= self.ticks.precharge - 1
+        m.d.comb += self.turn.eq(self.request & self.refresh & ~self.taken & ~self.granted & self.ready & rested)
 
     def _idle(self, m: Module) -> None:
         m.d.sync += self.step.eq(0)
-        fresh = self.request & ~self.served & ~self.granted & self.ready
-        with m.If(self.due | (fresh & self.refresh)):
-            # Until the address is followed again, no request is fresh: a bus refresh that arrives meanwhile is merged
-            # into this one, and an access would find the refresh row and an old column on the address outputs.
-            self._enter(m, State.PREPARE)
-            m.d.sync += self.served.eq(1)
-            m.d.comb += self.to_refresh.eq(1)
+        fresh = self.request & ~self.refresh & ~self.served & ~self.granted & self.ready
+        with m.If(self.due | self.turn):
+            self._begin_refresh(m)
         with m.Elif(fresh):
-            m.d.sync += self.served.eq(1)
+            m.d.sync += [self.served.eq(1), self.taken.eq(1)]
             with m.If(self.hit):
                 self._enter(m, State.ACCESS)
                 m.d.sync += self.row_strobe.eq(1)
+
+    def _begin_refresh(self, m: Module) -> None:
+        """Until the address is followed again, no request is fresh: a bus refresh that arrives meanwhile is merged into
+        this one, and an access would find the refresh row and an old column on the address outputs.
+        """
+        self._enter(m, State.PREPARE)
+        m.d.sync += [self.served.eq(1), self.taken.eq(1)]
+        m.d.comb += self.to_refresh.eq(1)
+
+    def _end_column(self, m: Module) -> None:
+        m.d.sync += [self.column_strobe.eq(0), self.write_enable.eq(0), self.data_out.eq(0)]
 
     def _access(self, m: Module) -> None:
         t = self.ticks
@@ -160,15 +180,21 @@ class Sequencer(Component):
     def _hold(self, m: Module) -> None:
         t = self.ticks
         capped = self.step >= t.column_cap - t.row_hold - 1
-        with m.If(~self.request | self.due | capped):
+        over = ~self.request & ~(self.read & self.data_out)
+        with m.If(self.turn):
+            self._begin_refresh(m)
+            self._end_column(m)
+        with m.Elif(over | self.due | capped):
             self._enter(m, State.REST)
-            m.d.sync += [self.column_strobe.eq(0), self.write_enable.eq(0), self.data_out.eq(0)]
+            self._end_column(m)
 
     def _rest(self, m: Module) -> None:
         t = self.ticks
         with m.If(self.step == t.column_rest - 2):
             m.d.sync += self.step.eq(self.step)
-        with m.If((self.rest >= t.precharge - 2) & (self.step >= t.column_rest - 2)):
+        with m.If(self.turn):
+            self._begin_refresh(m)
+        with m.Elif((self.rest >= t.precharge - 2) & (self.step >= t.column_rest - 2)):
             self._enter(m, State.IDLE)
 
     def _prepare(self, m: Module) -> None:

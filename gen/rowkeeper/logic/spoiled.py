@@ -62,6 +62,12 @@ def _buffer_always(s: Sequencer, m: Module) -> None:
         m.d.sync += s.data_out.eq(1)
 
 
+def _data_cut(s: Sequencer, m: Module) -> None:
+    """Data goes with MREQ, whether RD has risen or not."""
+    with m.If((s.state == State.HOLD) & ~s.request):
+        m.d.sync += [s.state.eq(State.REST), s.step.eq(0), s.column_strobe.eq(0), s.data_out.eq(0)]
+
+
 def _address_follows(s: Sequencer, m: Module) -> None:
     """The address follows the bus whenever no request is there, a strobe of ours or not."""
     m.d.comb += s.follow.eq(~s.request_first & ~s.request)
@@ -70,7 +76,7 @@ def _address_follows(s: Sequencer, m: Module) -> None:
 def _served_forgotten(s: Sequencer, m: Module) -> None:
     """After a refresh, a request that came meanwhile passes for a fresh one."""
     with m.If(s.refresh_ends):
-        m.d.sync += s.served.eq(0)
+        m.d.sync += [s.served.eq(0), s.taken.eq(0)]
 
 
 def _served_twice(s: Sequencer, m: Module) -> None:
@@ -84,6 +90,7 @@ _CHANGES: Mapping[str, Callable[[Sequencer, Module], None]] = {
     "column-in-refresh": _column_in_refresh,
     "write-late": _write_late,
     "buffer-always": _buffer_always,
+    "data-cut": _data_cut,
     "address-follows": _address_follows,
     "served-forgotten": _served_forgotten,
     "served-twice": _served_twice,

@@ -19,6 +19,7 @@ def bus_in_ticks(board: Board, delays: Delays, plan: Plan) -> Mapping[str, int]:
     """Widths of MREQ and of the strobes beside it, the notice before the bus comes back, drought and legal gap."""
     facts = facts_of(board, delays, plan.ticks)
     found = list(scenes(facts))
+    accesses = [scene for scene in found if scene.neighbour != "refresh"]
     request = "next MREQf seen"
     strobes = ("RDf seen", "WRf seen")
     return {
@@ -28,6 +29,7 @@ def bus_in_ticks(board: Board, delays: Delays, plan: Plan) -> Mapping[str, int]:
         "strobe_ticks": min(_least(facts, found, (strobe, "MREQr seen")) for strobe in strobes),
         "strobe_period_ticks": min(_least(facts, found, (strobe, request)) for strobe in strobes),
         "write_after_ticks": _least(facts, found, ("MREQf seen", "WRf seen")),
+        "read_rest_ticks": _least(facts, accesses, ("RDr seen", request)),
         "notice_ticks": _notice(facts),
         "drought_ticks": plan.refresh.drought_ticks,
         "legal_gap_ticks": plan.refresh.legal_gap_ticks,

@@ -19,13 +19,15 @@ _DROUGHT = {"loom": 600, "kiln": 300}
 def bounds(design: Design) -> Bounds:
     """MREQ and strobe widths at 4 MHz against 100 MHz, and at 2.5 MHz against 50 MHz, rounded down."""
     t, drought = design.ticks, _DROUGHT[design.name]
-    low, high, period, after, strobe = (20, 8, 38, 14, 37) if design.name == "loom" else (16, 6, 33, 13, 31)
+    promised = {"loom": (20, 8, 38, 14, 37, 14), "kiln": (16, 6, 33, 13, 31, 12)}
+    low, high, period, after, strobe, over = promised[design.name]
     return Bounds(
         request_low_ticks=low,
         request_high_ticks=high,
         request_period_ticks=period,
         strobe_ticks=13,
         strobe_period_ticks=strobe,
+        read_rest_ticks=over,
         write_after_ticks=after,
         notice_ticks=t.row_setup + t.refresh_low + t.precharge,
         drought_ticks=drought,

@@ -37,7 +37,8 @@ class AddressStill(Checker):
         self.must("before_refresh", ~refresh | (address.lasted >= t.row_setup))
         self.must("under_row", ~(s.row | self.row.changed) | ~address.changed | at_switch)
         self.must("before_column", ~self.column.began | (address.lasted >= apart))
-        self.must("under_column", ~(s.column | self.column.changed) | ~address.changed)
+        ends_late = self.column.over & s.probe("preparing")  # the refresh row goes out as the column strobe rises
+        self.must("under_column", ~(s.column | (self.column.changed & ~ends_late)) | ~address.changed)
         self._lemmas(apart)
         self.cover(self.row.over & ~s.column & (self.row.ended == t.give_up))
 

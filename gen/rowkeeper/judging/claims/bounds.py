@@ -15,10 +15,10 @@ class Bounds:
 
     `request_low`, `request_high`: MREQ stays low or high at least this long; `request_period`: from one request to the
     next. `strobe`: in an access RD or WR is low beside MREQ at least this long; `strobe_period`: from then to the
-    next request. `write_after`: from a request to its WR. `notice`: from the end of
-    quiet (grant or reset about to end) to the next request, both as seen. `drought`: the longest time without a
-    refresh request of the bus and without a quiet tick at which the sequencer is idle. `legal_gap`: what is claimed
-    of the gap between refresh strobes on such a bus.
+    next request. `write_after`: from a request to its WR. `read_rest`: from the end of RD to the next request that is
+    no refresh. `notice`: from the end of quiet (grant or reset about to end) to the next request, both as seen.
+    `drought`: the longest time without a refresh request of the bus and without a quiet tick at which the sequencer is
+    idle. `legal_gap`: what is claimed of the gap between refresh strobes on such a bus.
     """
 
     request_low_ticks: int
@@ -27,6 +27,7 @@ class Bounds:
     strobe_ticks: int
     strobe_period_ticks: int
     write_after_ticks: int
+    read_rest_ticks: int
     notice_ticks: int
     drought_ticks: int
     legal_gap_ticks: int

@@ -15,7 +15,15 @@ from rowkeeper.judging.claims.kind import Kind
 from rowkeeper.judging.claims.legal import LegalBound, Served
 from rowkeeper.judging.claims.refresh import Merged, RowSteps, WarmUp
 from rowkeeper.judging.claims.short import shortened, shortened_bounds
-from rowkeeper.judging.claims.strobes import DataBuffer, EarlyWrite, NeverCut, NoColumnInRefresh, Order, Precharge
+from rowkeeper.judging.claims.strobes import (
+    DataBuffer,
+    DataHeld,
+    EarlyWrite,
+    NeverCut,
+    NoColumnInRefresh,
+    Order,
+    Precharge,
+)
 
 __all__ = ["Claim", "claims"]
 
@@ -32,6 +40,7 @@ _ALL: tuple[type[Checker], ...] = (
     WarmUp,
     EarlyWrite,
     DataBuffer,
+    DataHeld,
     Kind,
     Hit,
     Served,

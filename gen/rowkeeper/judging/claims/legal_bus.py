@@ -1,9 +1,12 @@
 """A legal bus: its promises as assumptions, and how far each request has come, as helpers.
 
-Takes a Scene and Bounds; gives the base of the claims that need a legal bus. The helpers are two ranks (ticks at most
-until the sequencer is idle, and until its strobes rest) against the time since the request ended, and the age of the
-refresh against the drought. All of them are proved together, so no claim leans on another. Must not know picoseconds.
+Takes a Scene and Bounds; gives the base of the claims that need a legal bus. The helpers are ranks (ticks at most until
+an access can be taken and its address followed, and until a refresh can) against the time since the request ended, and
+the age of the refresh against the drought. All of them are proved together, so no claim leans on another. Must not know
+picoseconds.
 """
+
+from dataclasses import dataclass
 
 from amaranth.hdl import Const, Module, Mux, Signal, Value
 
@@ -13,13 +16,27 @@ from rowkeeper.judging.claims.strobe_account import account_seen, limits
 
 __all__ = ["LegalBus"]
 
+_Clock = tuple[Value | Signal, int]  # ticks since something, and how many there are at least before the next request
+
 
 def _larger(left: Value, right: Value) -> Value:
     return Mux(left > right, left, right)
 
 
-def _ranks(m: Module, scene: Scene) -> tuple[Signal, Signal]:
-    """Ticks at most until IDLE, and until IDLE or REST, with no request and nothing due."""
+@dataclass(frozen=True, slots=True)
+class _Ranks:
+    """Ticks at most until IDLE; until IDLE or REST; until one of them or HOLD; and until precharge is over as well.
+
+    With no request and nothing due. In HOLD, one tick after RD is seen high: how long that takes, the bus promises.
+    """
+
+    idle: Signal
+    rests: Signal
+    holds: Signal
+    turn: Signal
+
+
+def _ranks(m: Module, scene: Scene, read: Value) -> _Ranks:
     t = scene.design.ticks
     step, rest = scene.probe("step"), scene.probe("rest")
     after_column = max(t.precharge - 3, t.column_rest - 2, 0) + 1
@@ -30,20 +47,25 @@ def _ranks(m: Module, scene: Scene) -> tuple[Signal, Signal]:
         "access": at_least(t.row_end - 1 - step, 0) + 1,
         "reading": t.row_hold + 1 - step,
         "writing": t.write_lead + t.row_hold + 1 - step,
-        "holding": Const(1),
+        "holding": Const(1) + (scene.data & read),
         "preparing": t.row_setup + t.refresh_low - step,
         "refreshing": t.refresh_low - step,
     }
     then = {"access": after_row, "reading": after_column, "writing": after_column, "holding": held}
     then |= {"preparing": after_row, "refreshing": after_row}
     most = 2 * (t.row_end + t.write_lead + t.refresh_low + t.row_setup + t.rest)
-    idle, rests = Signal(range(most), name="until_idle"), Signal(range(most), name="until_rest")
+    ranks = _Ranks(*(Signal(range(most), name=f"until_{name}") for name in ("idle", "rest", "hold", "turn")))
     with m.If(scene.probe("resting")):
-        m.d.comb += idle.eq(resting)
+        m.d.comb += ranks.idle.eq(resting)
+    with m.If(scene.any_of("resting", "holding")):
+        m.d.comb += ranks.turn.eq(at_least(t.precharge - 1 - rest, 0))
     for name, value in to_rest.items():
         with m.If(scene.probe(name)):
-            m.d.comb += [rests.eq(value), idle.eq(value + then[name])]
-    return idle, rests
+            m.d.comb += [ranks.rests.eq(value), ranks.idle.eq(value + then[name])]
+            if name != "holding":
+                to_hold = value - 1 if name in ("reading", "writing") else value
+                m.d.comb += [ranks.holds.eq(to_hold), ranks.turn.eq(to_hold + t.precharge - 1)]
+    return ranks
 
 
 class LegalBus(Gaps):
@@ -56,6 +78,7 @@ class LegalBus(Gaps):
         "strobe-length",
         "strobe-period",
         "write-after",
+        "read-over",
         "grant-silent",
         "reset-silent",
         "awake",
@@ -126,6 +149,12 @@ class LegalBus(Gaps):
         self.assume("strobe_length_one", ~request | ~((had_read | read) & (self.had_write | write)))
         self.assume("write_after", ~(request & write) | (asked.lasted >= b.write_after_ticks))
         self.lemma("had_write", ~(request & self.had_write) | (asked.lasted > b.write_after_ticks))
+        # Ticks since our data stood on the bus beside a low RD.
+        read_before = Signal(range(b.read_rest_ticks + 1), name="since_read_before")
+        self.since_read = Mux(self.scene.data & read, 0, read_before)
+        self.m.d.sync += read_before.eq(at_most(self.since_read + 1, b.read_rest_ticks))
+        accesses = asked.began & ~self.scene.probe("refresh")
+        self.assume("read_over", ~accesses | (self.since_read >= b.read_rest_ticks))
         self.lemma("had_strobe", ~request | ((self.beside != 0) == (had_read | self.had_write)))
         enough = self.beside >= b.strobe_ticks
         self.assume("strobe_length", ~asked.over | self.kind_before | enough)
@@ -163,32 +192,46 @@ class LegalBus(Gaps):
         s, b, asked = self.scene, self.bounds, self.asked
         self.lemma("before", asked.before == s.probe("request_before"))
         self.lemma("held", ~asked.before | (self.kind_before == s.probe("held")))
-        self.until_idle, self.until_rest = idle, rests = _ranks(self.m, s)
+        self.ranks = ranks = _ranks(self.m, s, self.read.second)
         turn = Turn(self.m, s, self.request)
         self.lemma("turn", turn.proper)
-        free = s.probe("ready") & ~self.request.second
-        clocks = (
+        any_request: tuple[_Clock, ...] = (
             (asked.lasted, b.request_high_ticks),
             (self.since_request, b.request_period_ticks),
             (self.since_strobe, b.strobe_period_ticks),
             (self.since_quiet, b.notice_ticks),
         )
-        for name, rank, early in (("idle", idle, 0), ("rests", rests, 2)):
-            in_time: Value = Const(0)
-            for ticks, most in clocks:
-                in_time = in_time | (rank + at_most(ticks, most - early) <= most - early)
-            self.lemma(f"{name}_free", ~free | in_time)
-        ended: Value = Const(1)
+        access: tuple[_Clock, ...] = (*any_request, (self.since_read, b.read_rest_ticks))
+        self._in_time("turn", ranks.turn, any_request, 0)
+        self._in_time("holds", ranks.holds, any_request, 2)
+        self._in_time("idle", ranks.idle, access, 0)
+        self._in_time("rests", ranks.rests, access, 2)
+        self.lemma("since_request", ~self.request.second | (self.since_request == asked.lasted))
+        self.lemma("taken", ~self._ended(any_request) | ~s.probe("taken"))
+        self.lemma("follows", ~self._ended(access) | turn.follows)
+
+    def _free(self) -> Value:
+        return self.scene.probe("ready") & ~self.request.second
+
+    def _in_time(self, name: str, rank: Value, clocks: tuple[_Clock, ...], early: int) -> None:
+        """One of the promises at least leaves the rank its time, and `early` ticks more."""
+        in_time: Value = Const(0)
+        for ticks, most in clocks:
+            in_time = in_time | (rank + at_most(ticks, most - early) <= most - early)
+        self.lemma(f"{name}_free", ~self._free() | in_time)
+
+    def _ended(self, clocks: tuple[_Clock, ...]) -> Value:
+        """No request, and the next tick may bring one."""
+        ended: Value = self._free()
         for ticks, most in clocks:
             ended = ended & (ticks + 1 >= most)
-        self.lemma("since_request", ~self.request.second | (self.since_request == asked.lasted))
-        self.lemma("follows", ~(free & ended) | turn.follows)
+        return ended
 
     def _while_asked(self) -> None:
         """How far a request has come, from how long it has been there and RD or WR beside it."""
         s, t = self.scene, self.scene.design.ticks
         step, lasted, since_strobe = s.probe("step"), self.asked.lasted, self.since_strobe
-        idle, rests = self.until_idle, self.until_rest
+        idle, rests = self.ranks.idle, self.ranks.rests
         under_way = self.request.second & s.probe("ready") & ~self.asked.began
         refresh, access = under_way & s.probe("refresh"), under_way & ~s.probe("refresh")
         after_row = max(t.precharge - 2, t.column_rest - 2, 0) + 1
@@ -198,8 +241,11 @@ class LegalBus(Gaps):
         self.lemma("refresh_rests", ~refresh | (rests == 0) | (rests + lasted <= t.row_setup + t.refresh_low + 1))
         self.lemma("refresh_states", ~refresh | ~s.any_of("access", "reading", "writing", "holding"))
         self.lemma("access_states", ~access | ~s.any_of("preparing", "refreshing"))
-        self.lemma("begin_idle", ~(self.asked.began & s.probe("ready")) | (s.probe("idle") & ~s.probe("served")))
-        self.lemma("served", ~under_way | s.probe("served"))
+        begins = self.asked.began & s.probe("ready")
+        may_turn = s.any_of("idle", "resting", "holding") & ~s.probe("taken") & (s.probe("rest") >= t.precharge - 1)
+        may_start = s.probe("idle") & ~s.probe("served")
+        self.lemma("begin_idle", ~begins | Mux(s.probe("refresh"), may_turn, may_start))
+        self.lemma("served", ~under_way | (s.probe("served") & s.probe("taken")))
         self.lemma("access", ~(access & s.probe("access")) | (lasted == step + 1))
         self.lemma("access_bare", ~(access & s.probe("access") & (step >= t.column)) | (self.beside == 0))
         write = Mux(s.write, t.write_lead, 0)

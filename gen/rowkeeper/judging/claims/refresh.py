@@ -87,6 +87,7 @@ class Merged(Checker):
         left = at_least(Mux(row_left > column_left, row_left, column_left), 0) + 1
         self.lemma("before", before == s.probe("request_before"))
         self.lemma("merged_served", ~merged_now | s.probe("served"))
+        self.lemma("merged_taken", ~merged_now | s.probe("taken"))
         self.lemma("waits_unserved", ~waits_now | (s.any_of("idle", "resting") & ~s.probe("served")))
         self.lemma("waits_refresh", ~waits_now | s.probe("refresh"))
         self.lemma("waits_rest", ~(waits_now & s.probe("resting")) | (waited + left < within))

@@ -45,6 +45,7 @@ def shortened_bounds(design: Design) -> Bounds:
         request_period_ticks=t.row_end + t.rest + t.refresh_low + t.row_setup,
         strobe_ticks=t.column + 2,
         write_after_ticks=t.column + 1,
+        read_rest_ticks=t.rest + 1,
         strobe_period_ticks=t.write_lead + t.row_hold + t.rest + 2,
         notice_ticks=t.row_setup + t.refresh_low + t.rest,
         drought_ticks=_DROUGHT,

@@ -60,7 +60,7 @@ def account_rest(c: Checker, row: Stopwatch, column: Stopwatch) -> None:
     c.lemma("rest_column", _when(s.probe("resting"), column.lasted >= step))
     c.lemma("rest_pause", s.probe("rested") | (column.lasted >= at_most(waited, t.column_rest)))
     c.lemma("rest_idle", _when(s.probe("idle") & s.probe("rested"), column.lasted >= t.column_rest - 1))
-    c.lemma("rest_prepare", _when(s.probe("preparing"), column.lasted >= t.column_rest))
+    c.lemma("rest_prepare", _when(s.probe("preparing"), column.lasted >= at_most(step, t.column_rest)))
 
 
 def account_seen(c: Checker, *seen: Seen) -> None:

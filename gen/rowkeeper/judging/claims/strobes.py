@@ -1,10 +1,10 @@
-"""Claims about the strobes: order, precharge, never cut, no column strobe in a refresh, early write, data buffer.
+"""Claims about the strobes: order, precharge, never cut, no column strobe in a refresh, early write, data.
 
 Takes a Scene; every statement is over the pins, with the inputs free at every tick. Must not know the sequencer's
 states except by the probes' names.
 """
 
-from amaranth.hdl import Signal, Value
+from amaranth.hdl import Mux, Signal, Value
 
 from rowkeeper.judging.claims.checker import Checker
 from rowkeeper.judging.claims.scene import Seen, Stopwatch, Target
@@ -17,7 +17,7 @@ from rowkeeper.judging.claims.strobe_account import (
     limits,
 )
 
-__all__ = ["DataBuffer", "EarlyWrite", "NeverCut", "NoColumnInRefresh", "Order", "Precharge"]
+__all__ = ["DataBuffer", "DataHeld", "EarlyWrite", "NeverCut", "NoColumnInRefresh", "Order", "Precharge"]
 
 
 class _Timed(Checker):
@@ -94,7 +94,7 @@ class Order(_Timed):
         may = open_row & (self.row.lasted >= t.column - 1) & request.second
         reads = self.before(may & read.second, "reads")
         writes = self.before(may & write.second & ~read.second, "writes")
-        gone = self.before(s.column & ~s.row & ~request.second, "gone")
+        gone = self.before(s.column & ~s.row & ~request.second & ~(read.second & s.data), "gone")
         aborts = self.before(open_row & (self.row.lasted >= t.row_end - 1) & ~request.second, "aborts")
         self.must("read_prompt", ~reads | (self.column.began & s.data))
         self.must("write_prompt", ~writes | self.write.began)
@@ -107,7 +107,8 @@ class Precharge(_Timed):
 
     name = "precharge"
     sentence = (
-        "The row strobe is high for its precharge ticks before it falls again, and the column strobe for its own."
+        "The row strobe is high for its precharge ticks before it falls again, and the column strobe for its own, or"
+        " before a refresh for the ticks in which its row is set up."
     )
     assertions = 3
     spoiled = "precharge-short"
@@ -116,7 +117,9 @@ class Precharge(_Timed):
         self.watch()
         s, t = self.scene, self.scene.design.ticks
         self.must("row_rest", ~self.row.began | (self.row.ended >= t.precharge))
-        self.must("column_rest", ~self.row.began | (self.column.lasted >= t.column_rest))
+        before_refresh = min(t.column_rest, t.row_setup)
+        rested = self.column.lasted >= Mux(self.is_refresh, before_refresh, t.column_rest)
+        self.must("column_rest", ~self.row.began | rested)
         self.must("column_high", ~self.row.began | ~s.column)
         account_rest(self, self.row, self.column)
         self.cover(self.row.began & (self.row.ended == t.precharge))
@@ -217,3 +220,30 @@ class DataBuffer(_Timed):
         for name, holds in target.proper.items():
             self.lemma(name, holds)
         self.cover(data.over)
+
+
+class DataHeld(_Timed):
+    """Data is not taken away from a bus that still reads."""
+
+    name = "data-held"
+    sentence = (
+        "The data of a read stays on the bus until MREQ and RD have both been seen high, unless the cap of the column"
+        " strobe or a refresh ends it."
+    )
+    assertions = 1
+    spoiled = "data-cut"
+
+    def check(self) -> None:
+        self.watch()
+        s = self.scene
+        request, read = Seen(self.m, s, "mreq"), Seen(self.m, s, "rd")
+        account_seen(self, request, read)
+        data = Stopwatch(self.m, s.data, 1, "data")
+        over = self.before(~request.second & ~read.second, "over")
+        refresh = self.before(s.probe("due"), "due") | s.probe("preparing")
+        capped = self.column.ended >= s.design.ticks.column_cap
+        self.must("held", ~data.over | over | refresh | capped)
+        account_column(self, self.column)
+        late = Signal(name="read_late")
+        self.m.d.sync += late.eq(s.data & (late | (~request.second & read.second)))
+        self.cover(data.over & late & over)
