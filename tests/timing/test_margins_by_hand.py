@@ -258,6 +258,28 @@ def test_data_stays_until_it_is_taken() -> None:
     assert IN_LO + 2 * TICK_LO + 3_000 + 1_000 == margin("ThD", "memory read").margin_ps == 26_498
 
 
+@pytest.mark.parametrize("cycle", ["opcode fetch", "memory read"])
+def test_data_stays_until_RD_has_risen(cycle: str) -> None:
+    """However late RD rises after MREQ, the buffer lets go two ticks after it is seen high; ThD is 0 ns."""
+    found = margin("ThD(RDr)", cycle)
+    assert IN_LO + 2 * TICK_LO + 3_000 + 1_000 - 0 == found.margin_ps == 26_498
+    assert found.kind == "hard"
+
+
+def test_the_refresh_after_a_fetch_waits_for_no_late_RD() -> None:
+    """RD rises at most 85 ns after Cr of T3 and MREQ falls half a clock after it; both are seen within a tick.
+
+    So the column strobe is over when the refresh is taken, and needs no rest before it.
+    """
+    found = margin("ready", "opcode fetch", "refresh", word="column strobe over")
+    assert HALF - 85_000 + SEEN_LO - SEEN_HI == found.margin_ps == 11_183
+
+
+def test_the_column_strobe_rests_before_a_refresh_while_the_row_is_set_up() -> None:
+    """Whatever the bus does: three ticks of row set-up less the spread; -20 ns wanted."""
+    assert 3 * TICK_LO - SPREAD + 20_000 == margin("tCRP", "any access", "refresh").margin_ps
+
+
 def test_turnaround_before_a_write() -> None:
     """The buffer floats 25 ns after read_n; the processor may drive from the next Cf on."""
     off = 85_000 + SEEN_HI + 15_000 + 9_500 + 25_000

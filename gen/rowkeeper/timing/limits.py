@@ -163,10 +163,7 @@ def data_in_time(scene: Scene, facts: Facts) -> list[Rule]:
 
 
 def data_held(_scene: Scene, facts: Facts) -> list[Rule]:
-    """tOFF and ThD: chip and buffer keep data on the bus from the edge at which it is taken.
-
-    Counted from RD rising as well, for readers that take ThD so; the bus has taken its data by then: a reference.
-    """
+    """tOFF and ThD: chip and buffer keep data on the bus from the edge at which it is taken, and until RD has risen."""
     figure = facts.board.grade.figures.get("ThD")
     if figure is None or figure.lo_ps is None:
         return []
@@ -174,7 +171,8 @@ def data_held(_scene: Scene, facts: Facts) -> list[Rule]:
     rules = []
     for symbol, event in (("tOFF", "data decays"), ("ThD", "buffer floats")):
         rules.append(Rule(symbol, "sample", event, "min", asked, note="data on the bus after it is taken"))
-    return [*rules, Rule("ThD(RDr)", "RDr", "buffer floats", "min", asked, "reference", "data until RD has risen")]
+        rules.append(Rule(f"{symbol}(RDr)", "RDr", event, "min", asked, note="data on the bus until RD has risen"))
+    return rules
 
 
 def turnaround(_scene: Scene, facts: Facts) -> list[Rule]:
@@ -215,10 +213,11 @@ def seen_in_time(scene: Scene, _facts: Facts) -> list[Rule]:
     ]
 
 
-def column_capped(_scene: Scene, _facts: Facts) -> list[Rule]:
+def column_capped(scene: Scene, _facts: Facts) -> list[Rule]:
     """The bus ends the column strobe; the cap that keeps tCAS maximum comes later, so data is never cut off."""
     asked = Promise("no earlier", 0, None, _OURS)
-    return [Rule("column cap", "request over", "capped", "min", asked, note="the bus ends the cycle before the cap")]
+    last = "bus over" if scene.network.holds("bus over") else "request over"
+    return [Rule("column cap", last, "capped", "min", asked, note="the bus ends the cycle before the cap")]
 
 
 def grant_over(_scene: Scene, facts: Facts) -> list[Rule]:
@@ -232,6 +231,8 @@ def ready(scene: Scene, facts: Facts) -> list[Rule]:
     """Back at rest before the next request can be taken: its strobe is on time and its address was followed."""
     if scene.neighbour == "interrupt acknowledge" or facts.ticks.style == "straight":
         return []
+    if scene.neighbour == "refresh":
+        return _ready_for_refresh(scene, facts)
     note = "strobe rested before the next request is taken"
     row = f"row {note}"
     rules = [Rule("ready", "row rises", "next on time", "min", counted(facts, "precharge"), note=row)]
@@ -242,6 +243,19 @@ def ready(scene: Scene, facts: Facts) -> list[Rule]:
         rules.append(Rule("ready", last, "next on time", "min", rest, note=f"column {note}"))
     followed = "address followed again before it is taken"
     return [*rules, Rule("ready", last, "next MREQf seen", "min", counted(facts, plus=1), note=followed)]
+
+
+def _ready_for_refresh(scene: Scene, facts: Facts) -> list[Rule]:
+    """Precharge is over, the last request was seen to end, and data is no longer wanted when the refresh is taken."""
+    row = "row strobe rested before the next request is taken"
+    rules = [Rule("ready", "row rises", "next on time", "min", counted(facts, "precharge"), note=row)]
+    if scene.network.holds("column rises"):
+        gone, over = "MREQ seen high before the next request is taken", "column strobe over before the refresh is taken"
+        rules.append(Rule("ready", "MREQr seen", "next MREQf seen", "min", counted(facts, plus=2), note=gone))
+        rules.append(Rule("ready", "row rises", "next MREQf seen", "min", counted(facts, plus=1), note=gone))
+        no_later = Promise("no later", 0, None, _OURS)
+        rules.append(Rule("ready", "column rises", "next on time", "min", no_later, note=over))
+    return rules
 
 
 WITHIN: tuple[_Maker, ...] = (

@@ -72,9 +72,16 @@ def _at_rest(facts: Facts) -> int:
     figures = facts.board.grade.figures
     late = max((figures[s].hi_ps or 0) for s in ("TdCf(MREQf)", "TdCf(MREQr)") if s in figures)
     seen = late + facts.paths["mreq_n"].hi_ps + facts.aperture_ps + (SYNCHRONISER + 1) * tick
-    access = seen - c.low_lo_ps + max(t.column_rest, t.precharge) * tick
+    access = max(seen, _read_over(facts)) - c.low_lo_ps + max(t.column_rest, t.precharge) * tick
     refresh = seen - c.low_lo_ps - c.period_lo_ps + (t.row_setup + t.refresh_low + t.precharge) * tick
     return max(access, refresh)
+
+
+def _read_over(facts: Facts) -> int:
+    """When the end of RD is seen at the latest, counted as in `_at_rest` from the Cf that ends a read."""
+    figure = facts.board.grade.figures.get("TdCf(RDr)")
+    late = 0 if figure is None else figure.hi_ps or 0
+    return late + facts.paths["rd_n"].hi_ps + facts.aperture_ps + (SYNCHRONISER + 1) * facts.tick_hi_ps
 
 
 @dataclass(frozen=True, slots=True)

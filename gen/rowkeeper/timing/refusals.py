@@ -22,7 +22,10 @@ _MENDS: dict[str, tuple[str, ...]] = {
     **dict.fromkeys(("tRAH", "tASC", "tASR", "tRCD", "tWCS"), (_FINER, _EVEN_PATHS, _FASTER_CHIP)),
     **dict.fromkeys(("tRP", "tRC", "ready", "tCRP", "tCPN", "tRAS"), (_FASTER_CHIP, _FINER, _SLOWER_BUS)),
     **dict.fromkeys(("kind", "address-captured", "grant over"), (_SLOWER_BUS, _EVEN_PATHS)),
-    **dict.fromkeys(("turnaround", "tOFF", "ThD"), ("a data buffer that switches off faster", _FINER, _SLOWER_BUS)),
+    **dict.fromkeys(
+        ("turnaround", "tOFF", "ThD", "tOFF(RDr)", "ThD(RDr)"),
+        ("a data buffer that switches off faster", _FINER, _SLOWER_BUS),
+    ),
     **dict.fromkeys(("RD seen", "WR seen", "give up", "column cap"), (_FINER, _SLOWER_BUS, "shorter waits")),
     "tREF": ("fewer or longer grants", "shorter waits", "a faster bus clock", "a faster device clock"),
 }

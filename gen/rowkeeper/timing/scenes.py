@@ -47,6 +47,8 @@ def scenes(facts: Facts) -> Iterator[Scene]:
     for chip in chips_of(facts):
         if not is_straight(facts):
             yield _whatever(facts, chip)
+            yield _row_alone(facts, chip)
+            yield _whatever_then_refresh(facts, chip)
             yield _own_refreshes(facts, chip)
             yield from _after_notice(facts, chip)
         for kind in CYCLES:
@@ -105,13 +107,22 @@ def _access(scene: Scene, facts: Facts, kind: CycleKind) -> Iterator[Scene]:
     network.promise(f"{strobe} seen", "strobe known", counted(facts, plus=SYNCHRONISER))
     for case in _later(scene, facts, "earliest column", "strobe known", ("column by tick", f"column by {strobe[:2]}")):
         _column(case, facts, write)
-        ends = (("row hold", "row held on"), ("MREQ", "request over"))
-        for last in _later(case, facts, ends[0][1], ends[1][1], ("ended by row hold", "ended by MREQ"), "column rises"):
+        for last in _ends(case, facts, write):
             _end(last.network, facts, write)
             follow(last.network, facts, "column rises")
             _data(last.network, facts, scene.chip, write)
             _pads(last, facts, write)
             yield last
+
+
+def _ends(scene: Scene, facts: Facts, write: bool) -> Iterator[Scene]:
+    """The column strobe ends at the latest of row hold, MREQ and, in a read, RD."""
+    words = ("ended by row hold", "ended by the bus")
+    if write:
+        yield from _later(scene, facts, "row held on", "request over", words, "column rises")
+        return
+    for last in _later(scene, facts, "request over", "read over", ("MREQ ends last", "RD ends last"), "bus over"):
+        yield from _later(last, facts, "row held on", "bus over", words, "column rises")
 
 
 def _row(network: Network, facts: Facts) -> None:
@@ -183,17 +194,19 @@ def _column(scene: Scene, facts: Facts, write: bool) -> None:
         skewed(network, facts, ("ras_n", "RASf"), ("cas_n", "CASf"), span)
     network.promise("row rises", "row held on", counted(facts, plus=1))
     network.promise("MREQr seen", "request over", counted(facts, plus=SYNCHRONISER))
+    if not write:
+        network.promise("RDr seen", "read over", counted(facts, plus=SYNCHRONISER))
     network.promise("MREQr seen", "last start", counted(facts, plus=SYNCHRONISER - 1))
     network.promise("column falls", "capped", counted(facts, "column_cap"))
 
 
 def _end(network: Network, facts: Facts, write: bool) -> None:
-    """Column strobe, write enable and the data buffer end at one edge; the address may move a tick later."""
+    """Column strobe, write enable and the data buffer end at one edge; at a refresh the address may move with them."""
     drive(network, facts, "cas_n", "column rises", "CASr")
     if write:
         drive(network, facts, "we_n", "column rises", "WEr")
         skewed(network, facts, ("cas_n", "CASr"), ("we_n", "WEr"), SAME)
-    network.promise("column rises", "address released", counted(facts, plus=1, at_least=True))
+    network.promise("column rises", "address released", counted(facts, at_least=True))
     drive(network, facts, "ma", "address released", "column address ends")
 
 
@@ -211,10 +224,11 @@ def _pads(scene: Scene, facts: Facts, write: bool) -> None:
         through(network, facts, line, ("we_n", "WEf"), *spans)
     else:
         through(network, facts, line, ("read_n", "READf"), *spans)
-    if "ended by MREQ" in scene.case:
+    if "ended by the bus" in scene.case:
+        ends = ("rd_n", "RDr") if "RD ends last" in scene.case else ("mreq_n", "MREQr")
         for net, event in (("cas_n", "CASr"), ("read_n", "READr"), ("we_n", "WEr")):
             if network.holds(event):
-                through(network, facts, ("mreq_n", "MREQr"), (net, event), see)
+                through(network, facts, ends, (net, event), see)
 
 
 def _data(network: Network, facts: Facts, chip: Chip, write: bool) -> None:
@@ -308,7 +322,7 @@ def _whatever(facts: Facts, chip: Chip) -> Scene:
     network.promise("column falls", "row rises", counted(facts, "row_hold"))
     network.promise("row rises", "column rises", counted(facts, plus=1, at_least=True))
     network.promise("column falls", "column rises", counted(facts, "column_cap", at_most=True))
-    network.promise("column rises", "address released", counted(facts, plus=1, at_least=True))
+    network.promise("column rises", "address released", counted(facts, at_least=True))
     network.promise("row rises", "next row falls", counted(facts, "precharge", at_least=True))
     network.promise("column rises", "next row falls", counted(facts, "column_rest", at_least=True))
     # The address is let go of one flip-flop early, so whatever was on the bus stands this long before the row strobe.
@@ -326,3 +340,24 @@ def _whatever(facts: Facts, chip: Chip) -> Scene:
         drive(network, facts, net, edge, event)
     next_access(network, facts, write=False)
     return Scene(network, chip, "any access", "whatever the bus does", "", True)
+
+
+def _row_alone(facts: Facts, chip: Chip) -> Scene:
+    """Precharge is not left to the rest of a column strobe: the bus may have broken off before there was one."""
+    network = Network()
+    network.promise("row rises", "next row falls", counted(facts, "precharge", at_least=True))
+    drive(network, facts, "ras_n", "row rises", "RASr")
+    drive(network, facts, "ras_n", "next row falls", "next RASf")
+    return Scene(network, chip, "any access", "whatever the bus does", "no column strobe", False)
+
+
+def _whatever_then_refresh(facts: Facts, chip: Chip) -> Scene:
+    """A refresh of the bus may end the column strobe and begin at one edge; the row's set-up rests the strobes."""
+    network = Network()
+    network.promise("row rises", "column rises", counted(facts, plus=1, at_least=True))
+    network.promise("row rises", "next turn", counted(facts, "precharge", at_least=True))
+    network.promise("column rises", "next turn", counted(facts, at_least=True))
+    drive(network, facts, "ras_n", "row rises", "RASr")
+    drive(network, facts, "cas_n", "column rises", "CASr")
+    refresh(network, facts, "next ")
+    return Scene(network, chip, "any access", "refresh", "whatever the bus does", False)

@@ -88,7 +88,10 @@ def next_access(network: Network, facts: Facts, write: bool) -> None:
 
 
 def follow(network: Network, facts: Facts, last: str) -> None:
-    """Rest kept by the sequencer before the next strobe, whatever the bus asks; the address outputs follow at once."""
+    """Rest kept by the sequencer before the next strobe, whatever the bus asks; the address outputs follow at once.
+
+    A refresh of the bus is prepared from the very edge at which the column strobe rises.
+    """
     network.promise(last, "address followed", counted(facts, plus=1))
     drive(network, facts, "ma", "address followed", "next row address")
     if is_straight(facts):  # nothing holds the next row strobe back
@@ -97,5 +100,6 @@ def follow(network: Network, facts: Facts, last: str) -> None:
         if network.holds(start):
             network.promise("row rises", start, counted(facts, "precharge", at_least=True))
             if last == "column rises":
-                network.promise(last, start, counted(facts, "column_rest", at_least=True))
+                rest = () if start == "next turn" else ("column_rest",)
+                network.promise(last, start, counted(facts, *rest, at_least=True))
             break
