@@ -57,8 +57,8 @@ struct Bus {
     if (held && t >= hold_at) {
       held = false;
       Time gone = memory.valid_until < board.buffer_until ? memory.valid_until : board.buffer_until;
-      checks.least(CHECK_data_hold, (gone < t ? gone : t) - sampled, ThD);
-      if (gone < hold_at) checks.early++;  // before RD rose, after the processor took it: a reference only
+      checks.least(CHECK_data_hold, (gone < t ? gone : t) - hold_at, ThD);  // from RD rising at the processor
+      if (gone < hold_at) checks.early++;
     }
   }
 
