@@ -60,14 +60,14 @@ def nothing_better(board: Board, distinct: int = DISTINCT) -> None:
     assert better is None, (ticks, worst[:8], better, worst_margins(facts, better)[:8])
 
 
-@pytest.mark.slow
+@pytest.mark.speed
 @pytest.mark.parametrize("name", ["loom-16k", "kiln-64k"])
 def test_shipped_boards_have_the_best_ticks(name: str) -> None:
     """Before routing; what the router changes is planned again in the same way."""
     nothing_better(read_board(BOARDS / f"{name}.yaml"))
 
 
-@pytest.mark.slow
+@pytest.mark.speed
 @pytest.mark.parametrize("seed", range(QUICK))
 def test_some_boards_have_the_best_ticks(seed: int) -> None:
     """A few random boards, each with the first different margins only: the rest is on demand."""

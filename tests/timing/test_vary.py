@@ -40,7 +40,7 @@ def test_a_slower_chip_leaves_less() -> None:
     assert left == sorted(left, reverse=True)
 
 
-@pytest.mark.slow
+@pytest.mark.speed
 def test_the_slowest_clock_holds_and_the_next_step_does_not() -> None:
     """Planned in full on both sides of the end."""
     found = reach(BOARD, CHIPS)

@@ -67,16 +67,15 @@ def prove(board: Path, only_logic: bool, as_json: bool, progress: Progress) -> A
 def simulate(
     board: Path, netlist: bool, seed: int, icarus: bool, junit: Path | None, as_json: bool, progress: Progress
 ) -> Answer:
-    """The bench, on the logic or on the routed netlist."""
-    progress.plan({name: EXPECTED_S[name] for name in (("plan", "fit", "bench") if netlist else ("plan", "bench"))})
+    """The bench, on the logic or on the routed netlist, with the delays the router found."""
+    progress.plan({name: EXPECTED_S[name] for name in ("plan", "fit", "bench")})
     work = planned(read_board(board), progress)
     if not work.plan.holds:
         return _judged(work, verdict(work, ()), as_json)
-    if netlist:
-        work = fitted(work, progress)
+    work = fitted(work, progress)
     chosen = {name: text for name, text in work.subjects.items() if (name == "netlist") == netlist}
     work = benched(work, progress, seed, chosen, icarus)
-    found = verdict(work, ("fit", "bench") if netlist else ("bench",))
+    found = verdict(work, ("fit", "bench"))
     if junit is not None:
         write_text(junit, junit_xml(board_stamp(work.board, __version__), found))
     return _judged(work, found, as_json)
