@@ -26,7 +26,7 @@ class Problem:
     line: str = ""
 
 
-class Refused(Exception):  # noqa: N818 - it is a verdict on a file, not an error of ours
+class Refused(Exception):
     """A file was refused; `problems` holds every mistake found in it, in file order."""
 
     def __init__(self, problems: Iterable[Problem]) -> None:
