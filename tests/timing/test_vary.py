@@ -13,6 +13,8 @@ from timing.hand_built import KILN
 CHIPS = tuple(catalogue.chip(name) for name in catalogue.chips())
 BOARD = with_chip(KILN, catalogue.chip("4164-15-256row"))
 
+pytestmark = pytest.mark.speed  # dozens of plans each: on demand
+
 
 def test_each_frequency_is_planned_by_itself() -> None:
     """The same worst margin as the plan of a board file with that clock; the board's own value is among them."""
@@ -40,7 +42,6 @@ def test_a_slower_chip_leaves_less() -> None:
     assert left == sorted(left, reverse=True)
 
 
-@pytest.mark.speed
 def test_the_slowest_clock_holds_and_the_next_step_does_not() -> None:
     """Planned in full on both sides of the end."""
     found = reach(BOARD, CHIPS)
